@@ -1,0 +1,1 @@
+"""Who must know: rules, alerts, deliveries and mail."""

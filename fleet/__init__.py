@@ -1,0 +1,1 @@
+"""What holds oil and what it needs: places, machines, reservoirs, fluids, filters, events, targets, limits, standing."""

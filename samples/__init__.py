@@ -1,0 +1,1 @@
+"""What came out of the bottle: laboratories, samples, results, coding, checks, intake, trends, outlooks."""
