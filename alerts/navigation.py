@@ -1,0 +1,40 @@
+"""What stands at the top of every page."""
+
+from typing import Any
+
+from django.http import HttpRequest
+from django.urls import reverse
+
+from alerts.models import Alert
+from fleet.models import Site
+
+PAGES = [
+    ("board", "Board", ("board",)),
+    ("log", "Log a result", ("log",)),
+    ("samples", "Samples", ("samples", "sample", "upload", "reservoir")),
+    ("alerts", "Alerts", ("alerts", "alert", "rules", "deliveries")),
+    ("register", "Register", ("register",)),
+]
+
+
+def navigation(request: HttpRequest) -> dict[str, Any]:
+    """The pages, which one is open, how many alerts are open, and whether the data is made up."""
+    if not getattr(request, "user", None) or not request.user.is_authenticated:
+        return {"made_up": Site.objects.filter(is_demo=True).exists()}
+    open_alerts = Alert.objects.filter(state=Alert.State.OPEN).count()
+    sites = list(Site.objects.only("name", "is_demo")[:2])
+    name = request.resolver_match.url_name if request.resolver_match else None
+    nav = [
+        {
+            "url": reverse(target),
+            "label": label,
+            "count": open_alerts if target == "alerts" else 0,
+            "current": bool(name) and (name in names or any(str(name).startswith(f"{stem}-") for stem in names)),
+        }
+        for target, label, names in PAGES
+    ]
+    return {
+        "nav": nav,
+        "site_name": sites[0].name if len(sites) == 1 else "",
+        "made_up": any(site.is_demo for site in sites),
+    }

@@ -1,0 +1,5 @@
+"""Addresses of the alerts app."""
+
+from django.urls import URLPattern
+
+urlpatterns: list[URLPattern] = []

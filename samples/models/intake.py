@@ -1,0 +1,22 @@
+"""A lab file that was committed."""
+
+from django.db import models
+
+from fleet.models import Person
+
+
+class IntakeFile(models.Model):
+    """One lab file whose rows went in. Its digest makes sure that the same file twice adds nothing."""
+
+    name = models.CharField(max_length=200)
+    digest = models.CharField(max_length=64, unique=True, help_text="SHA-256 of the bytes.")
+    rows = models.PositiveIntegerField()
+    added = models.PositiveIntegerField()
+    entered_by = models.ForeignKey(Person, on_delete=models.SET_NULL, null=True, blank=True, related_name="+")
+    entered_at = models.DateTimeField()
+
+    class Meta:
+        ordering = ["-entered_at"]
+
+    def __str__(self) -> str:
+        return self.name
