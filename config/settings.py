@@ -20,7 +20,9 @@ env.read_env(str(BASE_DIR / ".env"))
 DEBUG = env.bool("SILTWATCH_DEBUG", False)
 SECRET_KEY = env.str("SILTWATCH_SECRET_KEY", "")
 if not SECRET_KEY:
-    raise ImproperlyConfigured("SILTWATCH_SECRET_KEY is not set. `make run` makes one; in production set a long random text.")
+    raise ImproperlyConfigured(
+        "SILTWATCH_SECRET_KEY is not set. `make run` makes one; in production set a long random text."
+    )
 ALLOWED_HOSTS = env.list("SILTWATCH_HOSTS", ["localhost", "127.0.0.1", "[::1]"])
 SITE_URL = env.str("SILTWATCH_URL", "http://localhost:8000").rstrip("/")
 CSRF_TRUSTED_ORIGINS = env.list("SILTWATCH_TRUSTED_ORIGINS", [SITE_URL])
@@ -76,7 +78,9 @@ TEMPLATES = [
 FORM_RENDERER = "django.forms.renderers.TemplatesSetting"
 INSTALLED_APPS.insert(INSTALLED_APPS.index("django.contrib.staticfiles"), "django.forms")
 
-DATABASES = {"default": env.dj_db_url("DATABASE_URL", "postgres:///siltwatch", conn_max_age=60, conn_health_checks=True)}
+DATABASES = {
+    "default": env.dj_db_url("DATABASE_URL", "postgres:///siltwatch", conn_max_age=60, conn_health_checks=True)
+}
 DEFAULT_AUTO_FIELD = "django.db.models.BigAutoField"
 
 AUTH_PASSWORD_VALIDATORS = [
@@ -170,10 +174,26 @@ CELERY_TIMEZONE = "UTC"
 # Rows are the truth and messages a hint: each sweep finds what a lost message left undone.
 SWEEP_SECONDS = env.float("SILTWATCH_SWEEP_SECONDS", 30.0)
 CELERY_BEAT_SCHEDULE = {
-    "sweep-outlooks": {"task": "samples.tasks.sweep_outlooks", "schedule": SWEEP_SECONDS, "options": {"expires": SWEEP_SECONDS}},
-    "evaluate-alerts": {"task": "alerts.tasks.evaluate_changed", "schedule": SWEEP_SECONDS, "options": {"expires": SWEEP_SECONDS}},
-    "send-due-deliveries": {"task": "alerts.tasks.send_due", "schedule": SWEEP_SECONDS, "options": {"expires": SWEEP_SECONDS}},
-    "refresh-all-outlooks": {"task": "samples.tasks.refresh_all", "schedule": timedelta(hours=24), "options": {"expires": 3600}},
+    "sweep-outlooks": {
+        "task": "samples.tasks.sweep_outlooks",
+        "schedule": SWEEP_SECONDS,
+        "options": {"expires": SWEEP_SECONDS},
+    },
+    "evaluate-alerts": {
+        "task": "alerts.tasks.evaluate_changed",
+        "schedule": SWEEP_SECONDS,
+        "options": {"expires": SWEEP_SECONDS},
+    },
+    "send-due-deliveries": {
+        "task": "alerts.tasks.send_due",
+        "schedule": SWEEP_SECONDS,
+        "options": {"expires": SWEEP_SECONDS},
+    },
+    "refresh-all-outlooks": {
+        "task": "samples.tasks.refresh_all",
+        "schedule": timedelta(hours=24),
+        "options": {"expires": 3600},
+    },
 }
 
 # How long a claimed delivery may stay in "sending" before it counts as broken off.

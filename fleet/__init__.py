@@ -1,1 +1,1 @@
-"""What holds oil and what it needs: places, machines, reservoirs, fluids, filters, events, targets, limits, standing."""
+"""What holds oil and what it needs: places, reservoirs, fluids, filters, events, targets, limits, standing."""

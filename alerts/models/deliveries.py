@@ -8,7 +8,7 @@ from fleet.models import Person
 
 
 class Delivery(models.Model):
-    """A mail that is owed. It is claimed by a conditional update, and marked sent before anything else can claim it again."""
+    """A mail that is owed: claimed by a conditional update, and never claimed again once it is marked sent."""
 
     class State(models.TextChoices):
         QUEUED = "queued", "waiting"

@@ -24,7 +24,10 @@ class Rule(models.Model):
         "for criticality", max_length=1, choices=[("A", "A only"), ("B", "A and B"), ("C", "all")], default="C"
     )
     within_days = models.PositiveSmallIntegerField(
-        null=True, blank=True, validators=[MinValueValidator(1)], help_text="Forecast: median date within this many days."
+        null=True,
+        blank=True,
+        validators=[MinValueValidator(1)],
+        help_text="Forecast: median date within this many days.",
     )
     least_chance = models.FloatField(
         "or chance at least",

@@ -63,7 +63,9 @@ class Element(models.Model):
     class Meta:
         ordering = ["position", "-fitted_on"]
         constraints = [
-            models.CheckConstraint(condition=Q(removed_on=None) | Q(removed_on__gte=F("fitted_on")), name="element_span_forward"),
+            models.CheckConstraint(
+                condition=Q(removed_on=None) | Q(removed_on__gte=F("fitted_on")), name="element_span_forward"
+            ),
             models.CheckConstraint(
                 condition=Q(beta=None, beta_size_um=None) | Q(beta__gte=1, beta_size_um__gt=0),
                 name="element_beta_with_size",

@@ -4,7 +4,7 @@ from django.db import models
 
 
 class Measurand(models.Model):
-    """One quantity with its unit and the scale its trend lives on: a particle count at a size, water, viscosity, a metal.
+    """One quantity with its unit and the scale its trend lives on: a count at a size, water, viscosity, a metal.
 
     `iso4406` is the cleanliness code itself: targets and limits for dirt are set on it, while its counts (p4, p6, p14,
     or p5m and p15m under the microscope) carry the results.

@@ -20,10 +20,18 @@ class Fluid(models.Model):
     name = models.CharField(max_length=80, unique=True)
     kind = models.CharField(max_length=60, blank=True, help_text="Mineral HM, ester, water-glycol, gear oil CLP.")
     viscosity_grade = models.PositiveIntegerField("ISO VG", null=True, blank=True)
-    viscosity_40 = models.FloatField("viscosity at 40 °C, mm²/s", null=True, blank=True, validators=[MinValueValidator(0.1)])
-    viscosity_100 = models.FloatField("viscosity at 100 °C, mm²/s", null=True, blank=True, validators=[MinValueValidator(0.1)])
-    density_kg_l = models.FloatField("density at 15 °C, kg/L", null=True, blank=True, validators=[MinValueValidator(0.5), MaxValueValidator(2)])
-    acid_number = models.FloatField("acid number of new oil, mg KOH/g", null=True, blank=True, validators=[MinValueValidator(0)])
+    viscosity_40 = models.FloatField(
+        "viscosity at 40 °C, mm²/s", null=True, blank=True, validators=[MinValueValidator(0.1)]
+    )
+    viscosity_100 = models.FloatField(
+        "viscosity at 100 °C, mm²/s", null=True, blank=True, validators=[MinValueValidator(0.1)]
+    )
+    density_kg_l = models.FloatField(
+        "density at 15 °C, kg/L", null=True, blank=True, validators=[MinValueValidator(0.5), MaxValueValidator(2)]
+    )
+    acid_number = models.FloatField(
+        "acid number of new oil, mg KOH/g", null=True, blank=True, validators=[MinValueValidator(0)]
+    )
     notes = models.TextField(blank=True)
 
     class Meta:
@@ -54,7 +62,9 @@ class OilCharge(models.Model):
     class Meta:
         ordering = ["reservoir", "-started_at"]
         constraints = [
-            models.CheckConstraint(condition=Q(ended_at=None) | Q(ended_at__gt=F("started_at")), name="charge_span_forward"),
+            models.CheckConstraint(
+                condition=Q(ended_at=None) | Q(ended_at__gt=F("started_at")), name="charge_span_forward"
+            ),
             ExclusionConstraint(
                 name="charge_no_overlap",
                 expressions=[

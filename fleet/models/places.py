@@ -8,7 +8,9 @@ from django.db import models
 
 def known_time_zone(name: str) -> None:
     if name not in zoneinfo.available_timezones():
-        raise ValidationError(f"“{name}” is no time zone. Write it as Area/City, for example Europe/Vienna.", code="time_zone")
+        raise ValidationError(
+            f"“{name}” is no time zone. Write it as Area/City, for example Europe/Vienna.", code="time_zone"
+        )
 
 
 class Site(models.Model):

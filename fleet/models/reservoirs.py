@@ -33,7 +33,9 @@ class Reservoir(models.Model):
     machine = models.ForeignKey(Machine, on_delete=models.PROTECT, related_name="reservoirs")
     also_serves = models.ManyToManyField(Machine, blank=True, related_name="served_by")
     name = models.CharField(max_length=80, help_text="What people call it: drive pack, lube sump.")
-    tag = models.CharField(max_length=40, unique=True, help_text="Short, printable, never reused. It stands on the label.")
+    tag = models.CharField(
+        max_length=40, unique=True, help_text="Short, printable, never reused. It stands on the label."
+    )
     reservoir_class = models.CharField("class", max_length=12, choices=ReservoirClass)
     criticality = models.CharField(max_length=1, choices=Criticality, default=Criticality.B)
     volume_l = models.FloatField("volume, L", validators=[MinValueValidator(0.1)])
@@ -46,7 +48,9 @@ class Reservoir(models.Model):
     )
     breather = models.CharField(max_length=80, blank=True)
     hazards = models.CharField(max_length=120, blank=True, help_text="Pressure, hot, at height, rotating, fire.")
-    interval_days = models.PositiveSmallIntegerField("days between samples", default=90, validators=[MinValueValidator(1)])
+    interval_days = models.PositiveSmallIntegerField(
+        "days between samples", default=90, validators=[MinValueValidator(1)]
+    )
     next_stop_on = models.DateField("next planned stop", null=True, blank=True)
     retired_on = models.DateField(null=True, blank=True)
     notes = models.TextField(blank=True)
@@ -59,7 +63,9 @@ class Reservoir(models.Model):
             models.UniqueConstraint(fields=["machine", "name"], name="reservoir_once_a_machine"),
             models.CheckConstraint(condition=models.Q(volume_l__gt=0), name="reservoir_volume_positive"),
             models.CheckConstraint(condition=models.Q(interval_days__gte=1), name="reservoir_interval_positive"),
-            models.CheckConstraint(condition=models.Q(criticality__in=["A", "B", "C"]), name="reservoir_criticality_known"),
+            models.CheckConstraint(
+                condition=models.Q(criticality__in=["A", "B", "C"]), name="reservoir_criticality_known"
+            ),
         ]
 
     def __str__(self) -> str:
@@ -91,7 +97,9 @@ class ReservoirAlias(models.Model):
         constraints = [
             models.UniqueConstraint(fields=["reservoir", "name"], name="alias_once_a_reservoir"),
             models.CheckConstraint(
-                condition=models.Q(valid_to=None) | models.Q(valid_from=None) | models.Q(valid_to__gt=models.F("valid_from")),
+                condition=models.Q(valid_to=None)
+                | models.Q(valid_from=None)
+                | models.Q(valid_to__gt=models.F("valid_from")),
                 name="alias_span_forward",
             ),
         ]
@@ -121,5 +129,3 @@ class SamplePoint(models.Model):
 
     def __str__(self) -> str:
         return f"{self.name} {self.place}".strip()
-
-

@@ -26,7 +26,7 @@ class RunwayState(models.TextChoices):
 
 
 class Standing(models.Model):
-    """One row a reservoir, written by the outlooks when a sample lands and read by the board without a join over results.
+    """One row a reservoir, written when a sample lands and read by the board without a join over results.
 
     `revision` counts the writes; alerts keep in `judged_revision` the one they have dealt with, so a lost message
     leaves a row to find rather than a gap. Figures for the bar are on the headroom scale of `worst`, in the same
@@ -56,7 +56,9 @@ class Standing(models.Model):
     runway_late = models.DateTimeField(null=True)
     past_since = models.DateTimeField(null=True)
     chance_before_next = models.FloatField(null=True)
-    last_values = ArrayField(models.FloatField(), default=list, help_text="Last twelve of the worst measurand, oldest first.")
+    last_values = ArrayField(
+        models.FloatField(), default=list, help_text="Last twelve of the worst measurand, oldest first."
+    )
     in_doubt = models.PositiveSmallIntegerField(default=0, help_text="Samples waiting for a person's word.")
     open_alerts = models.PositiveSmallIntegerField(default=0)
     wanted_at = models.DateTimeField(null=True, help_text="A refresh was asked for and has not been done yet.")
@@ -79,7 +81,9 @@ class Standing(models.Model):
             models.Index(fields=["rank", "headroom"]),
             models.Index(fields=["wanted_at"], condition=models.Q(wanted_at__isnull=False), name="standing_wanted"),
             models.Index(
-                fields=["reservoir"], condition=~models.Q(revision=models.F("judged_revision")), name="standing_unjudged"
+                fields=["reservoir"],
+                condition=~models.Q(revision=models.F("judged_revision")),
+                name="standing_unjudged",
             ),
         ]
 

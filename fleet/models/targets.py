@@ -30,13 +30,11 @@ SCOPE_COLUMNS = (
     | Q(scope="fluid", site__isnull=False, fluid__isnull=False, reservoir_class="", reservoir=None)
     | Q(scope="reservoir", reservoir__isnull=False, site=None, reservoir_class="", fluid=None)
 )
-ONE_FIGURE = (
-    (~Q(code="") & Q(low=None, high=None)) | (Q(code="") & (Q(low__isnull=False) | Q(high__isnull=False)))
-)
+ONE_FIGURE = (~Q(code="") & Q(low=None, high=None)) | (Q(code="") & (Q(low__isnull=False) | Q(high__isnull=False)))
 
 
 class Figure(models.Model):
-    """What a target and a limit have in common. A sample is judged by the figure that was valid on the day it was drawn."""
+    """What a target and a limit have in common. A sample is judged by the figure valid on the day it was drawn."""
 
     class Basis(models.TextChoices):
         ABSOLUTE = "absolute", "the value itself"
@@ -49,12 +47,16 @@ class Figure(models.Model):
     fluid = models.ForeignKey(Fluid, on_delete=models.CASCADE, null=True, blank=True, related_name="+")
     reservoir = models.ForeignKey(Reservoir, on_delete=models.CASCADE, null=True, blank=True, related_name="%(class)ss")
     measurand = models.ForeignKey(Measurand, on_delete=models.PROTECT, related_name="+")
-    code = models.CharField("ISO 4406 code", max_length=16, blank=True, help_text="Three numbers, 18/16/13. A dash leaves a size out.")
+    code = models.CharField(
+        "ISO 4406 code", max_length=16, blank=True, help_text="Three numbers, 18/16/13. A dash leaves a size out."
+    )
     low = models.FloatField("not below", null=True, blank=True)
     high = models.FloatField("not above", null=True, blank=True)
     basis = models.CharField("figure is", max_length=10, choices=Basis, default=Basis.ABSOLUTE)
     valid_from = models.DateField("from")
-    source = models.CharField(max_length=200, help_text="Where the figure comes from: the maker's manual, a standard, a decision.")
+    source = models.CharField(
+        max_length=200, help_text="Where the figure comes from: the maker's manual, a standard, a decision."
+    )
     reason = models.CharField("why", max_length=200, blank=True)
     author = models.ForeignKey(Person, on_delete=models.SET_NULL, null=True, blank=True, related_name="+")
     entered_at = models.DateTimeField(auto_now_add=True)
@@ -97,7 +99,9 @@ def figure_constraints(name: str) -> list[models.BaseConstraint]:
     return [
         models.CheckConstraint(condition=SCOPE_COLUMNS, name=f"{name}_scope_columns"),
         models.CheckConstraint(condition=ONE_FIGURE, name=f"{name}_one_figure"),
-        models.CheckConstraint(condition=Q(low=None) | Q(high=None) | Q(low__lt=F("high")), name=f"{name}_sides_in_order"),
+        models.CheckConstraint(
+            condition=Q(low=None) | Q(high=None) | Q(low__lt=F("high")), name=f"{name}_sides_in_order"
+        ),
         models.CheckConstraint(condition=~Q(source=""), name=f"{name}_has_source"),
         models.UniqueConstraint(
             fields=["scope", "site", "reservoir_class", "fluid", "reservoir", "measurand", "valid_from"],

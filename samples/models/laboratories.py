@@ -8,7 +8,9 @@ class Laboratory(models.Model):
 
     name = models.CharField(max_length=80, unique=True)
     codes_only = models.BooleanField("reports codes without counts", default=False)
-    counted_ml = models.FloatField("volume counted, mL", null=True, blank=True, help_text="Used when a report does not say.")
+    counted_ml = models.FloatField(
+        "volume counted, mL", null=True, blank=True, help_text="Used when a report does not say."
+    )
     notes = models.TextField(blank=True)
 
     class Meta:

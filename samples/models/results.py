@@ -8,7 +8,7 @@ from samples.models.samples import Sample
 
 
 class Result(models.Model):
-    """One measurand of one sample as reported, with its canonical value, or an interval when only a code or a bound is known.
+    """One measurand of one sample as reported, with its value, or an interval when only a code or a bound is known.
 
     A corrected report adds the next revision; the one before stays, and only the latest is `current`.
     An interval is (low, high]: more than low, up to and including high; either side may be open.

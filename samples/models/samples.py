@@ -11,7 +11,7 @@ from samples.querysets import SampleQuerySet
 
 
 class Sample(models.Model):
-    """One bottle: where, when and how it was drawn. Trends order by `drawn_at`; "what did we know then" by `entered_at`."""
+    """One bottle: where, when, how it was drawn. Trends order by `drawn_at`; "what did we know then" by `entered_at`."""
 
     class Method(models.TextChoices):
         LIVE_VALVE = "live_valve", "live valve, running"
@@ -53,7 +53,9 @@ class Sample(models.Model):
     )
     machine_hours = models.FloatField(null=True, blank=True, validators=[MinValueValidator(0)])
     oil_hours = models.FloatField("hours on the oil", null=True, blank=True, validators=[MinValueValidator(0)])
-    litres_added = models.FloatField("oil added since last, L", null=True, blank=True, validators=[MinValueValidator(0)])
+    litres_added = models.FloatField(
+        "oil added since last, L", null=True, blank=True, validators=[MinValueValidator(0)]
+    )
     laboratory = models.ForeignKey(Laboratory, on_delete=models.PROTECT, null=True, blank=True, related_name="samples")
     lab_number = models.CharField(max_length=60, blank=True)
     label_code = models.CharField(max_length=40, blank=True)
@@ -77,8 +79,12 @@ class Sample(models.Model):
                 name="sample_lab_number_once",
             ),
             models.UniqueConstraint(fields=["label_code"], condition=~Q(label_code=""), name="sample_label_once"),
-            models.CheckConstraint(condition=Q(machine_hours=None) | Q(machine_hours__gte=0), name="sample_hours_not_negative"),
-            models.CheckConstraint(condition=Q(litres_added=None) | Q(litres_added__gte=0), name="sample_litres_not_negative"),
+            models.CheckConstraint(
+                condition=Q(machine_hours=None) | Q(machine_hours__gte=0), name="sample_hours_not_negative"
+            ),
+            models.CheckConstraint(
+                condition=Q(litres_added=None) | Q(litres_added__gte=0), name="sample_litres_not_negative"
+            ),
             models.CheckConstraint(
                 condition=~Q(verdict="set_aside") | ~Q(verdict_reason=""), name="sample_set_aside_has_reason"
             ),
