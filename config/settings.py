@@ -196,6 +196,10 @@ CELERY_BEAT_SCHEDULE = {
     },
 }
 
+# Apps point one way only, so what must follow a change further up is named here and sent by name after the commit.
+AFTER_FLEET_CHANGE_TASKS = ["samples.tasks.refresh_outlook"]  # each called with one reservoir's id
+AFTER_REFRESH_TASKS = ["alerts.tasks.evaluate_changed"]  # each called without arguments
+
 # How long a claimed delivery may stay in "sending" before it counts as broken off.
 DELIVERY_STUCK_SECONDS = env.float("SILTWATCH_DELIVERY_STUCK_SECONDS", 120.0)
 

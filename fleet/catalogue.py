@@ -97,21 +97,10 @@ _ROWS: list[tuple[Any, ...]] = [
         0,
     ),
 ]
-_COLUMNS = [
-    "key",
-    "name",
-    "symbol",
-    "unit",
-    "kind",
-    "family",
-    "scale",
-    "scale_offset",
-    "direction",
-    "size_um",
-    "sensible_low",
-    "sensible_high",
-    "decimals",
-]
+_COLUMNS = (
+    *("key", "name", "symbol", "unit", "kind", "family", "scale", "scale_offset", "direction", "size_um"),
+    *("sensible_low", "sensible_high", "decimals"),
+)
 
 
 def load(measurands: Any) -> None:

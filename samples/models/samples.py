@@ -11,7 +11,7 @@ from samples.querysets import SampleQuerySet
 
 
 class Sample(models.Model):
-    """One bottle: where, when, how it was drawn. Trends order by `drawn_at`; "what did we know then" by `entered_at`."""
+    """One bottle: where, when and how drawn. Trends order by `drawn_at`; "what did we know then" by `entered_at`."""
 
     class Method(models.TextChoices):
         LIVE_VALVE = "live_valve", "live valve, running"
