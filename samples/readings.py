@@ -1,7 +1,7 @@
 """Readings: one measured quantity each, in its canonical unit, beside what the laboratory wrote. Pure.
 
 Canonical units: counts in particles per mL, water and elements in mg/kg, viscosity in mm²/s, acid and base number in
-mg KOH/g, oil temperature in °C. A reading has either a value or an interval (low, high], never a guess inside the interval.
+mg KOH/g, oil temperature in °C. A reading has either a value or an interval (low, high], never a guess inside it.
 """
 
 from collections.abc import Sequence
@@ -117,9 +117,9 @@ def water_percent(water_mg_kg: float) -> float:
 def reading_of(
     measurand: str, number: ReadNumber, unit: str = "", *, density_kg_per_l: Decimal | None = None
 ) -> Reading | None:
-    """The reading that a number read from a cell or a field makes; None when the number is missing, undetected or wrong.
+    """The reading that a number from a cell or a field makes; None when the number is missing, undetected or wrong.
 
-    ``unit`` is the reported one; "" means the canonical one. "<5" gives (0, 5], ">100" and "≥100" an interval open above.
+    ``unit`` is the reported one; "" means the canonical one. "<5" gives (0, 5], ">100" and "≥100" are open above.
 
     Raises:
         UnitError: as `to_canonical`.
@@ -180,9 +180,9 @@ def readings_from_counts(
 
 
 def readings_from_code(code: IsoCode, *, microscope: bool | None = None) -> list[Reading]:
-    """Readings of a code without counts: an interval (low, high] of particles per mL for each size, never a middle value.
+    """Readings of a code without counts: an interval (low, high] of particles per mL a size, never a middle value.
 
-    ``≥7`` is open above, ``>28`` too. ``*`` (too many to count) is at least what the next smaller count proves, and open
+    ``≥7`` is open above, ``>28`` too. ``*`` (too many to count) is at least what the next larger size proves, and open
     above. ``microscope=None``: a code that begins with a dash is read as 5 and 15 µm under the microscope (ISO 4406
     writes those so); pass False where the laboratory's counter left out 4 µm.
     """
@@ -233,7 +233,5 @@ def _code_interval(size: ScaleNumber, smaller_counts: Sequence[ScaleNumber]) -> 
 
 def _by_density(value: Decimal, density_kg_per_l: Decimal | None) -> Decimal:
     if density_kg_per_l is None or density_kg_per_l <= 0:
-        raise UnitError(
-            "density_missing", "mg/L needs the oil's density. Ask the laboratory for mg/kg, or give the density."
-        )
+        raise UnitError("density_missing", "mg/L needs the oil's density. Ask for mg/kg, or give the density.")
     return value / density_kg_per_l

@@ -1,0 +1,1 @@
+"""Coding standards, one module each. Pure: plain values in and out."""
