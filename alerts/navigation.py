@@ -2,12 +2,14 @@
 
 from typing import Any
 
+from django.db.models import Count, Q
 from django.http import HttpRequest
 from django.urls import reverse
 
 from alerts.models import Alert
-from fleet.models import Site
+from fleet.models import Role, Site
 
+OPEN = Q(areas__reservoirs__alerts__state=Alert.State.OPEN)
 PAGES = [
     ("board", "Board", ("board",)),
     ("log", "Log a result", ("log",)),
@@ -21,20 +23,21 @@ def navigation(request: HttpRequest) -> dict[str, Any]:
     """The pages, which one is open, how many alerts are open, and whether the data is made up."""
     if not getattr(request, "user", None) or not request.user.is_authenticated:
         return {"made_up": Site.objects.filter(is_demo=True).exists()}
-    open_alerts = Alert.objects.filter(state=Alert.State.OPEN).count()
-    sites = list(Site.objects.only("name", "is_demo")[:2])
+    sites = list(Site.objects.annotate(open_alerts=Count("areas__reservoirs__alerts", filter=OPEN)))
     name = request.resolver_match.url_name if request.resolver_match else None
     nav = [
         {
             "url": reverse(target),
             "label": label,
-            "count": open_alerts if target == "alerts" else 0,
+            "count": sum(site.open_alerts for site in sites) if target == "alerts" else 0,
             "current": bool(name) and (name in names or any(str(name).startswith(f"{stem}-") for stem in names)),
         }
         for target, label, names in PAGES
     ]
     return {
         "nav": nav,
+        "user_may_log": request.user.may_act_as(Role.TECHNICIAN),
+        "user_may_judge": request.user.may_act_as(Role.ENGINEER),
         "site_name": sites[0].name if len(sites) == 1 else "",
         "made_up": any(site.is_demo for site in sites),
     }

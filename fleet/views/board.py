@@ -1,0 +1,63 @@
+"""The first page: every reservoir, worst first."""
+
+from django.core.paginator import Paginator
+from django.http import HttpRequest, HttpResponse
+from django.shortcuts import render
+from django.utils import timezone
+from django.utils.http import urlencode
+
+from fleet.board import SORTS, board_row, ordered, totals
+from fleet.forms.board import BoardFilter
+from fleet.models import Reservoir
+
+A_PAGE = 100
+COLUMNS = [
+    ("criticality", "Crit.", ""),
+    ("reservoir", "Reservoir", ""),
+    ("code", "Latest code", ""),
+    ("worst", "Against target (dashed) and limit (solid)", ""),
+    ("headroom", "Headroom", "num"),
+    ("runway", "Runway to limit, 80 % range", "num"),
+    ("", "Last 12", ""),
+    ("age", "Age", "num"),
+]
+
+
+def board(request: HttpRequest) -> HttpResponse:
+    as_of = timezone.now()
+    form = BoardFilter(request.GET or None)
+    sort = request.GET.get("sort", "")
+    place = form.place()
+    shown = ordered(form.narrow(place, as_of), sort.removeprefix("-"), sort.startswith("-"))
+    page = Paginator(shown.with_standing(), A_PAGE).get_page(request.GET.get("page"))  # type: ignore[attr-defined]
+    context = {
+        "form": form,
+        "totals": totals(place, as_of),
+        "rows": [board_row(reservoir, as_of) for reservoir in page],
+        "page": page,
+        "columns": _columns(request, sort),
+        "here": _address(request),
+        "empty": not page and not Reservoir.objects.exists(),
+    }
+    return render(request, "fleet/board.html", context)
+
+
+def _columns(request: HttpRequest, sort: str) -> list[dict[str, str]]:
+    """Headings that sort: the address of the next order, and which way it runs now."""
+    chosen = sort.removeprefix("-") if sort.removeprefix("-") in SORTS else "worst"
+    columns = []
+    for key, label, css in COLUMNS:
+        is_chosen = key == chosen
+        downward = is_chosen and sort.startswith("-")
+        following = f"-{key}" if is_chosen and not downward else key
+        order = ("descending" if downward else "ascending") if is_chosen else ""
+        columns.append(
+            {"label": label, "css": css, "order": order, "url": _address(request, sort=following) if key else ""}
+        )
+    return columns
+
+
+def _address(request: HttpRequest, **changed: str) -> str:
+    """This page's address with some of its parameters changed and the page number dropped."""
+    kept = {key: str(value) for key, value in request.GET.items() if value and key != "page"}
+    return f"{request.path}?{urlencode(kept | changed)}"

@@ -1,0 +1,79 @@
+"""Figures as people read them: headroom with its sign, a runway with its range, an age in days."""
+
+from __future__ import annotations
+
+from datetime import datetime
+from typing import Protocol
+
+MINUS = "\N{MINUS SIGN}"
+HORIZON_MONTHS = 24
+LONG_DAYS = 120
+DAYS_A_MONTH = 30.4375
+
+
+class HasRunway(Protocol):
+    """What a standing and an outlook have in common."""
+
+    runway: str
+    runway_early: datetime | None
+    runway_median: datetime | None
+    runway_late: datetime | None
+    past_since: datetime | None
+
+
+def signed(value: float, decimals: int = 1) -> str:
+    """+1.2, −0.6 or 0.0, with a true minus and never a minus before nothing."""
+    rounded = round(value, decimals)
+    sign = "+" if rounded > 0 else MINUS if rounded < 0 else ""
+    return f"{sign}{abs(rounded):.{decimals}f}"
+
+
+def headroom_text(headroom: float | None, unit: str) -> str:
+    if headroom is None:
+        return ""
+    return f"{signed(headroom, 0)} %" if unit == "%" else signed(headroom)
+
+
+def days_between(earlier: datetime, later: datetime) -> int:
+    return max(round((later - earlier).total_seconds() / 86400), 0)
+
+
+def age_text(drawn_at: datetime | None, as_of: datetime) -> str:
+    return "no sample" if drawn_at is None else f"{days_between(drawn_at, as_of)} d"
+
+
+def span_text(days: int) -> str:
+    """Days while they can be planned by, months after that."""
+    if days <= LONG_DAYS:
+        return f"{days} day" if days == 1 else f"{days} days"
+    return f"{round(days / DAYS_A_MONTH)} months"
+
+
+def runway_text(outlook: HasRunway, as_of: datetime) -> str:
+    """“18 days (9 – 41)”, “beyond 24 months”, “passed 20 days ago” or “cannot say”."""
+    if outlook.runway == "past":
+        since = outlook.past_since
+        return f"passed {span_text(days_between(since, as_of))} ago" if since else "past already"
+    if outlook.runway == "beyond_horizon":
+        return f"beyond {HORIZON_MONTHS} months"
+    if outlook.runway != "dated":
+        return "cannot say"
+    return _dated_text(outlook, as_of)
+
+
+def _dated_text(outlook: HasRunway, as_of: datetime) -> str:
+    early, median, late = (
+        None if moment is None else days_between(as_of, moment)
+        for moment in (outlook.runway_early, outlook.runway_median, outlook.runway_late)
+    )
+    if median is None:
+        soonest = f" (soonest {span_text(early)})" if early is not None else ""
+        return f"beyond {HORIZON_MONTHS} months{soonest}"
+    long = median > LONG_DAYS
+    low = _end(early, long) if early is not None else "now"
+    high = _end(late, long) if late is not None else f"beyond {HORIZON_MONTHS} months"
+    return f"{span_text(median)} ({low} – {high})"
+
+
+def _end(days: int, months: bool) -> str:
+    return str(round(days / DAYS_A_MONTH)) if months else str(days)
