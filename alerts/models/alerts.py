@@ -4,7 +4,8 @@ from django.db import models
 from django.db.models import Q
 
 from alerts.models.rules import Rule
-from fleet.models import OilCharge, Person, Reservoir
+from alerts.querysets import AlertQuerySet
+from fleet.models import Measurand, OilCharge, Person, Reservoir
 from samples.models import Sample
 
 
@@ -34,6 +35,7 @@ class Alert(models.Model):
     family = models.CharField(max_length=10, choices=Family)
     charge = models.ForeignKey(OilCharge, on_delete=models.SET_NULL, null=True, blank=True, related_name="alerts")
     kind = models.CharField(max_length=12, choices=Rule.Kind, help_text="The gravest rule that speaks now.")
+    measurand = models.ForeignKey(Measurand, on_delete=models.SET_NULL, null=True, blank=True, related_name="+")
     weight = models.PositiveSmallIntegerField(help_text="Sorts the list: rule, then criticality. 0 is first.")
     headline = models.CharField(max_length=160)
     sentence = models.TextField(help_text="The evidence in plain words.")
@@ -48,6 +50,8 @@ class Alert(models.Model):
     closed_by = models.ForeignKey(Person, on_delete=models.SET_NULL, null=True, blank=True, related_name="+")
     close_reason = models.CharField(max_length=16, choices=CloseReason, blank=True)
     close_note = models.TextField(blank=True)
+
+    objects = AlertQuerySet.as_manager()
 
     class Meta:
         ordering = ["weight", "opened_at"]
@@ -68,6 +72,15 @@ class Alert(models.Model):
 
     def __str__(self) -> str:
         return self.headline
+
+    @property
+    def is_open(self) -> bool:
+        return self.state == self.State.OPEN
+
+    @property
+    def rests_on_sound_sample(self) -> bool:
+        """False once the sample that opened or last updated it was set aside or put in doubt."""
+        return self.sample is None or self.sample.verdict == Sample.Verdict.ACCEPTED
 
 
 class StoryEntry(models.Model):

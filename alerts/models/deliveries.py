@@ -4,6 +4,7 @@ from django.db import models
 from django.db.models import Q
 
 from alerts.models.alerts import Alert
+from alerts.querysets import DeliveryQuerySet
 from fleet.models import Person
 
 
@@ -27,6 +28,8 @@ class Delivery(models.Model):
     sent_at = models.DateTimeField(null=True, blank=True)
     last_error = models.TextField(blank=True)
     message_id = models.CharField(max_length=120, blank=True)
+
+    objects = DeliveryQuerySet.as_manager()
 
     class Meta:
         ordering = ["due_at", "pk"]

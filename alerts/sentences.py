@@ -1,0 +1,223 @@
+"""What a finding says in plain words: a headline for lists and subjects, and a sentence of evidence. Pure."""
+
+from collections.abc import Sequence
+from datetime import datetime, tzinfo
+from decimal import Decimal
+from typing import Final
+
+from alerts.rules import Finding, Kind, OutlookFacts, Speaker
+from samples.coding.iso4406 import scale_number
+
+MINUS: Final = "\N{MINUS SIGN}"
+HORIZON: Final = "24 months"
+CERTAIN_LINE: Final = {Kind.PAST_LIMIT: "limit", Kind.FORECAST: "limit", Kind.OVER_TARGET: "target"}
+
+
+def day_text(moment: datetime, zone: tzinfo, year: bool = True) -> str:
+    """A day on the site's clock: 6 Mar 2026, or 6 Mar."""
+    local = moment.astimezone(zone)
+    return f"{local.day} {local:%b %Y}" if year else f"{local.day} {local:%b}"
+
+
+def number_text(value: float, decimals: int) -> str:
+    return f"{value:.{decimals}f}".replace("-", MINUS)
+
+
+def code_text(per_ml: float) -> str:
+    """The ISO 4406 scale number of a count [1/mL]."""
+    return str(scale_number(Decimal(str(max(per_ml, 0.0))) * 100))
+
+
+def value_text(outlook: OutlookFacts) -> str:
+    """The latest value for a headline: code 17; 620 mg/kg; <10 mg/kg; 52.3 mm²/s (+13.7 % of new)."""
+    if outlook.is_count:
+        return f"code {_count_code(outlook)}"
+    text = f"{_bounded(outlook)} {outlook.unit}".strip()
+    change = percent_change(outlook)
+    return text if change is None else f"{text} ({_signed(change)} % of new)"
+
+
+def full_value_text(outlook: OutlookFacts) -> str:
+    """The latest value for evidence; a count with the particles that were counted."""
+    if outlook.is_count and outlook.value is not None:
+        return f"{value_text(outlook)}, {_significant(outlook.value)} per mL"
+    return value_text(outlook)
+
+
+def percent_change(outlook: OutlookFacts) -> float | None:
+    """Change of the value against the new oil, %, where that is how its limits are written."""
+    if not outlook.is_percent or outlook.value is None or not outlook.baseline:
+        return None
+    return 100.0 * (outlook.value / outlook.baseline - 1.0)
+
+
+def line_text(outlook: OutlookFacts, line: str) -> str:
+    """The side of the target or limit that the value is nearer to: limit 15; limit 500; not below 3.0; limit +10 %."""
+    low, high = _line(outlook, line)
+    if low is None and high is None:
+        return f"no {line}"
+    if high is None or (low is not None and _nearer_low(outlook, low, high)):
+        return f"{line} not below {_figure_text(outlook, low)}"
+    return f"{line} {_figure_text(outlook, high)}"
+
+
+def headline(finding: Finding, zone: tzinfo) -> str:
+    """≥14 µm(c) code 17, limit 15. At most 160 characters."""
+    outlook = finding.speaker
+    if outlook is None:
+        due = f"sample due {day_text(finding.due_at, zone)}" if finding.due_at else "planned sample"
+        return f"{due} has not come"
+    text = f"{short_name(outlook)} {value_text(outlook)}, {line_text(outlook, CERTAIN_LINE[finding.kind])}"
+    return (text if finding.kind is not Kind.FORECAST else f"{text}, {_forecast_words(outlook, zone)}")[:160]
+
+
+def evidence(finding: Finding, zone: tzinfo) -> str:
+    """The finding in whole sentences: what was measured, against what, how fast it moves and what else speaks."""
+    if finding.speaker is None:
+        return _overdue_evidence(finding, zone)
+    outlook = finding.speaker
+    parts = [
+        _measured(outlook, finding.kind, zone),
+        runway_sentence(outlook, zone),
+        _companions(finding.companions),
+        "Water is past its limit in the same bottle; an optical counter counts droplets too."
+        if finding.water_too
+        else "",
+    ]
+    return " ".join(part for part in parts if part)
+
+
+def runway_sentence(outlook: OutlookFacts, zone: tzinfo) -> str:
+    """How sure and how urgent: the forecast with its 80 % range and the chance by the next sample, or why not."""
+    return " ".join(part for part in (_runway_only(outlook, zone), _chance_sentence(outlook, zone)) if part)
+
+
+def short_name(outlook: OutlookFacts) -> str:
+    return outlook.name.removeprefix("Particles ")
+
+
+def over_sentence(outlook: OutlookFacts, zone: tzinfo) -> str:
+    """What closes an alert: the later value and where it stands."""
+    line = "target" if outlook.has_target and outlook.word == "within_target" else "limit"
+    drawn = f"The sample drawn {day_text(outlook.drawn_at, zone)}" if outlook.drawn_at else "A later sample"
+    return f"{drawn} shows {short_name(outlook)} {value_text(outlook)}, {line_text(outlook, line)}."
+
+
+def _measured(outlook: OutlookFacts, kind: Kind, zone: tzinfo) -> str:
+    line = CERTAIN_LINE[kind]
+    drawn = f"Drawn {day_text(outlook.drawn_at, zone)}: " if outlook.drawn_at else ""
+    source = outlook.limit_source if line == "limit" else outlook.target_source
+    by = f" ({source})" if source else ""
+    passed = f", passed by {distance_text(outlook)}" if kind is Kind.PAST_LIMIT and _is_past(outlook) else ""
+    return f"{drawn}{short_name(outlook)} {full_value_text(outlook)}; {line_text(outlook, line)}{by}{passed}."
+
+
+def distance_text(outlook: OutlookFacts) -> str:
+    """How far the value is from its limit, without a sign: 1.7 code steps; 24 % of the span to the limit."""
+    steps = abs(outlook.headroom or 0.0)
+    if outlook.is_count:
+        return f"{steps:.1f} code step" if f"{steps:.1f}" == "1.0" else f"{steps:.1f} code steps"
+    return f"{steps:.0f} % of the span to it"
+
+
+def _is_past(outlook: OutlookFacts) -> bool:
+    return outlook.headroom is not None and outlook.headroom < 0
+
+
+def _runway_only(outlook: OutlookFacts, zone: tzinfo) -> str:
+    if outlook.runway == "past":
+        return f"Past it since {day_text(outlook.past_since, zone)}." if outlook.past_since else ""
+    if outlook.runway == "beyond_horizon":
+        return f"No passing of the limit is in sight within {HORIZON}."
+    if outlook.runway != "dated":
+        return f"No forecast: {outlook.refusal_sentence or 'too little is known.'}"
+    early = "now" if outlook.runway_early is None else day_text(outlook.runway_early, zone)
+    late = f"beyond {HORIZON}" if outlook.runway_late is None else day_text(outlook.runway_late, zone)
+    if outlook.runway_median is None:
+        return f"At this rate it could pass the limit from {early} on, more likely not within {HORIZON}."
+    about = day_text(outlook.runway_median, zone)
+    return f"At this rate it passes the limit about {about} (80 % range {early} to {late})."
+
+
+def _chance_sentence(outlook: OutlookFacts, zone: tzinfo) -> str:
+    if outlook.chance is None or outlook.word == Kind.PAST_LIMIT:
+        return ""
+    due = f" on {day_text(outlook.next_planned_at, zone)}" if outlook.next_planned_at else ""
+    return f"Chance of passing before the next planned sample{due}: {chance_text(outlook.chance)}."
+
+
+def chance_text(chance: float) -> str:
+    """A chance (0 to 1) as a person says it, never 0 or 100 %."""
+    if chance < 0.01:
+        return "under 1 %"
+    return "over 99 %" if chance > 0.99 else f"{100 * chance:.0f} %"
+
+
+def _forecast_words(outlook: OutlookFacts, zone: tzinfo) -> str:
+    if outlook.runway == "dated" and outlook.runway_median is not None:
+        return f"passed about {day_text(outlook.runway_median, zone)}"
+    return f"{chance_text(outlook.chance or 0.0)} chance of passing before the next sample"
+
+
+def _companions(companions: Sequence[Speaker]) -> str:
+    said = [
+        f"{short_name(s.outlook)} {value_text(s.outlook)}, {line_text(s.outlook, CERTAIN_LINE[s.kind])}"
+        for s in companions
+    ]
+    return f"Also: {'; '.join(said)}." if said else ""
+
+
+def _overdue_evidence(finding: Finding, zone: tzinfo) -> str:
+    due = f"The sample planned for {day_text(finding.due_at, zone)} has not come. " if finding.due_at else ""
+    last = (
+        f"The last accepted one was drawn {day_text(finding.drawn_at, zone)}." if finding.drawn_at else "There is none."
+    )
+    return f"{due}{last}"
+
+
+def _count_code(outlook: OutlookFacts) -> str:
+    if outlook.value is not None:
+        return code_text(outlook.value)
+    if outlook.high is not None:
+        return code_text(outlook.high)
+    # (low, ...) open above begins just past the bound of the number before
+    return f"≥{code_text((outlook.low or 0.0) * 1.0001)}"
+
+
+def _bounded(outlook: OutlookFacts) -> str:
+    if outlook.value is not None:
+        return number_text(outlook.value, outlook.decimals)
+    if outlook.high is not None and not outlook.low:
+        return f"<{number_text(outlook.high, outlook.decimals)}"
+    if outlook.high is None:
+        return f"over {number_text(outlook.low or 0.0, outlook.decimals)}"
+    return f"{number_text(outlook.low or 0.0, outlook.decimals)} to {number_text(outlook.high, outlook.decimals)}"
+
+
+def _line(outlook: OutlookFacts, line: str) -> tuple[float | None, float | None]:
+    if line == "limit":
+        return outlook.limit_low, outlook.limit_high
+    return outlook.target_low, outlook.target_high
+
+
+def _nearer_low(outlook: OutlookFacts, low: float, high: float) -> bool:
+    figure = percent_change(outlook) if outlook.is_percent else outlook.value
+    return figure is not None and abs(figure - low) < abs(figure - high)
+
+
+def _figure_text(outlook: OutlookFacts, figure: float | None) -> str:
+    if figure is None:
+        return ""
+    if outlook.is_count:
+        return code_text(figure)
+    if outlook.is_percent:
+        return f"{_signed(figure, 0 if figure == round(figure) else 1)} %"
+    return number_text(figure, outlook.decimals)
+
+
+def _signed(value: float, decimals: int = 1) -> str:
+    return f"{value:+.{decimals}f}".replace("-", MINUS)
+
+
+def _significant(per_ml: float) -> str:
+    return f"{per_ml:.0f}" if per_ml >= 10 else f"{per_ml:.2g}"
