@@ -87,6 +87,11 @@ class ReadNumber:
     problem: Problem | None = None
 
 
+def number_of(value: Decimal) -> ReadNumber:
+    """A number that was never text, as if it had been read."""
+    return ReadNumber("number", f"{value:f}", value)
+
+
 def read_number(text: str, *, decimal_mark: DecimalMark | None = None, negative: bool = False) -> ReadNumber:
     """Read one number.
 
