@@ -1,6 +1,5 @@
 """Siltwatch's own processes: the steps before serving, then the web server, the worker and beat."""
 
-import os
 import signal
 import subprocess
 import sys
@@ -60,7 +59,13 @@ class Application:
             name, argv, self.env, CHECKOUT, self.logs / f"{log}.log", death_signal=death_signal, restarts=True
         )
 
+    @property
+    def wants_demo(self) -> bool:
+        return self.env.get("SILTWATCH_DEMO", "1") != "0"
+
     def logins(self) -> str:
+        if not self.wants_demo:
+            return ""
         asked = subprocess.run(
             self.manage("demo", "--logins").argv,
             env=dict(self.env),
@@ -86,7 +91,7 @@ def prepare(supervisor: Supervisor, application: Application) -> None:
     """Migrate, collect the static files beside it, and load the demo fleet when there is nothing yet."""
     collecting = _collect(supervisor, application)
     supervisor.step(application.manage("migrate", "--no-input"))
-    if os.environ.get("SILTWATCH_DEMO", "1") != "0":
+    if application.wants_demo:
         supervisor.step(application.manage("demo", "--if-empty"))
     if collecting:
         supervisor.finish(collecting)

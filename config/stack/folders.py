@@ -77,6 +77,15 @@ class Lock:
         lock.note(f"process {os.getpid()}")
         return lock
 
+    @classmethod
+    def held(cls, state: Path) -> bool:
+        """Whether a supervisor runs on this folder now."""
+        try:
+            cls.take(state).file.close()
+        except StackError:
+            return True
+        return False
+
     def note(self, text: str) -> None:
         self.file.truncate(0)
         self.file.write(text + "\n")

@@ -40,8 +40,9 @@ def run() -> int:
 
 def running_environment() -> dict[str, str]:
     """The variables of the Siltwatch that runs from this state folder now, for commands beside it."""
-    path = _environment_file(state_folder())
-    if not path.exists():
+    state = state_folder()
+    path = _environment_file(state)
+    if not Lock.held(state) or not path.exists():
         raise StackError("Siltwatch is not running: start it with `make run`, then try again in another terminal.")
     kept: dict[str, str] = json.loads(path.read_text())
     return kept

@@ -1,0 +1,68 @@
+"""Folders and addresses: private, short enough, and free."""
+
+import os
+import socket
+import stat
+import subprocess
+import sys
+import tempfile
+from pathlib import Path
+
+import pytest
+
+from config.stack import addresses, folders
+from config.stack.errors import StackError
+from config.stack.folders import CHECKOUT, Lock
+
+
+def test_the_secret_key_is_made_once_and_only_its_owner_reads_it(tmp_path: Path) -> None:
+    key = folders.secret_key(tmp_path)
+    assert len(key) >= 64
+    assert folders.secret_key(tmp_path) == key
+    assert stat.S_IMODE((tmp_path / "secret_key").stat().st_mode) == 0o600
+
+
+def test_a_socket_folder_too_deep_gives_a_short_private_one(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(tempfile, "tempdir", str(tmp_path))
+    short = folders.socket_folder(tmp_path / ("deep" * 30))
+    assert len(str(short)) < folders.SOCKET_PATH_LIMIT - folders.SOCKET_NAME_ROOM
+    assert stat.S_IMODE(short.stat().st_mode) == 0o700
+    assert folders.socket_folder(tmp_path / ("deep" * 30)) == short
+
+
+def test_a_short_folder_that_others_can_enter_is_refused(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(tempfile, "tempdir", str(tmp_path))
+    folders.socket_folder(tmp_path / ("deep" * 30)).chmod(0o777)
+    with pytest.raises(StackError, match="belongs to someone else"):
+        folders.socket_folder(tmp_path / ("deep" * 30))
+
+
+def test_a_second_supervisor_is_told_who_runs(tmp_path: Path) -> None:
+    lock = Lock.take(tmp_path)
+    lock.note("process 7, http://localhost:8000")
+    with pytest.raises(StackError, match="process 7, http://localhost:8000"):
+        Lock.take(tmp_path)
+    assert Lock.held(tmp_path)
+
+
+def test_a_lock_ends_with_its_holder(tmp_path: Path) -> None:
+    code = f"from config.stack.folders import *; kept = Lock.take(Path({str(tmp_path)!r})); os._exit(9)"
+    assert subprocess.run([sys.executable, "-c", code], cwd=CHECKOUT, check=False).returncode == 9
+    assert not Lock.held(tmp_path)
+
+
+def test_a_taken_port_gives_the_next_free_one() -> None:
+    with socket.create_server(("127.0.0.1", 0)) as taken:
+        port = taken.getsockname()[1]
+        assert addresses.free_port(port, "127.0.0.1") > port
+
+
+@pytest.mark.parametrize("text", ["eighty", "0", "70000", "-1"])
+def test_a_port_that_is_none_is_named(monkeypatch: pytest.MonkeyPatch, text: str) -> None:
+    monkeypatch.setenv("SILTWATCH_PORT", text)
+    with pytest.raises(StackError, match="SILTWATCH_PORT"):
+        addresses.wanted_port()
+
+
+def test_nothing_answers_where_nobody_listens() -> None:
+    assert addresses.health(addresses.free_port(20_000 + os.getpid() % 10_000, "127.0.0.1")) == 0
