@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from datetime import datetime
-from typing import Any
+from typing import Any, cast
 
 from django.db import models
 from django.db.models import Prefetch, Q
@@ -21,9 +21,10 @@ class SampleQuerySet(models.QuerySet[Any]):
 
     def with_results(self) -> SampleQuerySet:
         """The current results of each sample as `current_results`, in the catalogue's order."""
-        results = self.model._meta.get_field("results").related_model
-        assert results is not None
-        current = results._default_manager.filter(current=True).select_related("measurand").order_by("measurand__position")
+        results = cast("type[models.Model]", self.model._meta.get_field("results").related_model)
+        current = (
+            results._default_manager.filter(current=True).select_related("measurand").order_by("measurand__position")
+        )
         return self.prefetch_related(Prefetch("results", queryset=current, to_attr="current_results"))
 
     def before(self, moment: datetime) -> SampleQuerySet:

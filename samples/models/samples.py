@@ -1,5 +1,9 @@
 """A bottle of oil."""
 
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
 from django.core.validators import MaxValueValidator, MinValueValidator
 from django.db import models
 from django.db.models import Q
@@ -8,6 +12,9 @@ from fleet.models import OilCharge, Person, Reservoir, SamplePoint
 from samples.models.intake import IntakeFile
 from samples.models.laboratories import Laboratory
 from samples.querysets import SampleQuerySet
+
+if TYPE_CHECKING:
+    from samples.models.results import Doubt, Result
 
 
 class Sample(models.Model):
@@ -66,6 +73,10 @@ class Sample(models.Model):
     verdict_by = models.ForeignKey(Person, on_delete=models.SET_NULL, null=True, blank=True, related_name="+")
     verdict_at = models.DateTimeField(null=True, blank=True)
     verdict_reason = models.CharField(max_length=240, blank=True)
+
+    # Put there by the questions that fetch them: SampleQuerySet.with_results and the history of a reservoir.
+    current_results: list[Result]
+    found_doubts: list[Doubt]
 
     objects = SampleQuerySet.as_manager()
 

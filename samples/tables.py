@@ -1,0 +1,44 @@
+"""The numbers of a reservoir's charts as a table: one row a sample, newest first, one column a measurand."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from fleet.models import Measurand
+from samples.history import History
+from samples.models import Result, Sample
+from samples.sample_codes import code_text
+
+
+@dataclass(frozen=True, slots=True)
+class TableRow:
+    sample: Sample
+    code: str
+    cells: list[str]
+
+
+@dataclass(frozen=True, slots=True)
+class HistoryTable:
+    columns: list[Measurand]
+    rows: list[TableRow]
+
+
+def history_table(history: History) -> HistoryTable:
+    columns = history.measurands
+    rows = [TableRow(sample, code_text(sample.current_results), _cells(sample, columns)) for sample in history.samples]
+    return HistoryTable(columns, rows[::-1])
+
+
+def _cells(sample: Sample, columns: list[Measurand]) -> list[str]:
+    by_key = {result.measurand.key: result for result in sample.current_results}
+    return [cell_text(by_key[measurand.key]) if measurand.key in by_key else "" for measurand in columns]
+
+
+def cell_text(result: Result) -> str:
+    """A result in the measurand's unit: a value, or what is known of it when only a code or a bound is."""
+    if result.value is not None:
+        mark = result.qualifier if result.qualifier != "≥" else "≥ "
+        return f"{mark}{result.value:,.{result.measurand.decimals}f}"
+    if result.high is None:
+        return f"over {result.low:,.4g}"
+    return f"up to {result.high:,.4g}" if not result.low else f"{result.low:,.4g}–{result.high:,.4g}"

@@ -1,0 +1,1 @@
+"""Pages of the samples app: one module a page."""

@@ -1,0 +1,124 @@
+"""One reservoir: where it stands, how it got there, what is coming."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from datetime import datetime
+from typing import Any
+
+from django.db.models import Prefetch
+from django.http import HttpRequest, HttpResponse
+from django.shortcuts import get_object_or_404, render
+from django.utils import timezone
+
+from fleet.board import board_row
+from fleet.models import Element, FilterPosition, Measurand, Reservoir
+from fleet.wording import headroom_text, runway_text
+from samples.charts import cleanliness_chart, other_charts
+from samples.history import History, read_history
+from samples.lines import code_number, figure_key
+from samples.models import Outlook
+from samples.sample_codes import code_text
+from samples.tables import history_table
+from samples.trends.forecast import chance_words
+from samples.verdicts import Verdict, slope_text, verdict
+
+
+@dataclass(frozen=True, slots=True)
+class OutlookLine:
+    """One measurand's outlook as a row of the page's table."""
+
+    outlook: Outlook
+    value: str
+    target: str
+    limit: str
+    headroom: str
+    runway: str
+    chance: str
+    slope: str
+
+
+def reservoir(request: HttpRequest, tag: str) -> HttpResponse:
+    now = timezone.now()
+    found = get_object_or_404(Reservoir.objects.with_standing(), tag=tag)
+    history = read_history(found)
+    outlooks = {
+        one.measurand.key: one for one in Outlook.objects.filter(reservoir=found).select_related("measurand", "sample")
+    }
+    chart = cleanliness_chart(history, outlooks, now)
+    context = {
+        "reservoir": found,
+        "row": board_row(found, now),
+        "charge": history.current_charge,
+        "verdict": _verdict(history, outlooks, now),
+        "chart": chart,
+        "others": other_charts(history, outlooks, now),
+        "latest": _latest(history),
+        "lines": [_line(history, outlook, now) for outlook in outlooks.values()],
+        "table": history_table(history),
+        "events": list(reversed(history.events)),
+        "positions": _positions(found),
+        "also_serves": found.also_serves.all(),
+        "zone": found.area.site.zone,
+    }
+    return render(request, "samples/reservoir.html", context)
+
+
+def _verdict(history: History, outlooks: dict[str, Outlook], now: datetime) -> Verdict | None:
+    """Of the measurand that speaks for the reservoir; None before anything was computed."""
+    standing = getattr(history.reservoir, "standing", None)
+    speaks = outlooks.get(standing.worst.key) if standing and standing.worst else None
+    if speaks is None:
+        return None
+    return verdict(speaks, _figure_text(history, speaks, "limit"), history.reservoir.area.site.zone, now)
+
+
+def _figure_text(history: History, outlook: Outlook, which: str) -> str:
+    """How the target or limit of a measurand is spoken of: a code number for a count, the figure itself otherwise."""
+    judged_at = outlook.sample.drawn_at if outlook.sample else outlook.computed_at
+    look = history.target_at if which == "target" else history.limit_at
+    found = look(figure_key(outlook.measurand.key), judged_at)
+    if found is None:
+        return ""
+    number = code_number(found, outlook.measurand.key)
+    return str(number) if number is not None else found.text if not found.code else ""
+
+
+def _line(history: History, outlook: Outlook, now: datetime) -> OutlookLine:
+    unit = "steps" if outlook.measurand.kind == Measurand.Kind.COUNT else "%"
+    chance = outlook.chance_before_next
+    return OutlookLine(
+        outlook,
+        _value(outlook),
+        _figure_text(history, outlook, "target"),
+        _figure_text(history, outlook, "limit"),
+        headroom_text(outlook.headroom, unit),
+        runway_text(outlook, now),
+        chance_words(chance) if chance is not None else "",
+        slope_text(outlook),
+    )
+
+
+def _value(outlook: Outlook) -> str:
+    if outlook.value is not None:
+        return f"{outlook.value:,.{outlook.measurand.decimals}f}"
+    if outlook.low is None and outlook.high is None:
+        return ""
+    if outlook.high is None:
+        return f"over {outlook.low:,.4g}"
+    return f"{outlook.low or 0:,.4g} to {outlook.high:,.4g}"
+
+
+def _latest(history: History) -> dict[str, Any] | None:
+    """The latest accepted sample that carries a code, or else the latest accepted one."""
+    coded = [sample for sample in history.accepted if code_text(sample.current_results)]
+    sample = coded[-1] if coded else history.latest
+    if sample is None:
+        return None
+    counts = [result for result in sample.current_results if result.measurand.kind == Measurand.Kind.COUNT]
+    return {"sample": sample, "code": code_text(sample.current_results), "counts": counts}
+
+
+def _positions(found: Reservoir) -> list[FilterPosition]:
+    fitted = Element.objects.filter(removed_on=None)
+    return list(found.filter_positions.prefetch_related(Prefetch("elements", queryset=fitted, to_attr="fitted")))
