@@ -72,6 +72,7 @@ class OutlookFacts:
     name: str
     family: str
     word: str
+    measurand_id: int | None = None
     unit: str = ""
     decimals: int = 0
     is_count: bool = False
@@ -216,20 +217,38 @@ def is_recent(drawn_at: datetime | None, interval_days: int, as_of: datetime) ->
     return drawn_at is not None and as_of - drawn_at <= timedelta(days=days)
 
 
+def later_word(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | None:
+    """What was measured on an alert's measurand after the sample it rests on; particle counts stand for each other."""
+    judged = _judged(alert.family, reservoir)
+    named = [o for o in judged if alert.family == DIRT or o.key == alert.measurand_key]
+    newest = max(named, key=lambda o: o.drawn_at or alert.since, default=None)
+    return newest if newest and newest.drawn_at and newest.drawn_at > alert.since else None
+
+
 def proof_it_is_over(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | None:
     """The later measurement that shows that an open alert is over, or None. Ask only when no rule speaks any more.
 
-    The measurand that opened it must have been measured later, on the same oil or on another; particle counts stand for
-    each other. Every current measurand of the family must be back. *Back* is: within its target; or, for an alert
-    about a limit, inside the limit by one code step, or by 10 % of the span. An alert over target asks for the target.
-    A margin keeps a value that dances on the line from closing and opening the alert with every sample.
+    The measurand that opened it must have been measured later, and every current measurand of the family must be back.
+    *Back* is: within its target; or, for an alert about a limit, inside the limit by one code step, or by 10 % of the
+    span. An alert over target asks for the target. A margin keeps a value that dances on the line from closing and
+    opening the alert with every sample.
     """
-    judged = [o for o in of_family(reservoir.outlooks, alert.family) if o.is_current and (o.has_target or o.has_limit)]
-    named = [o for o in judged if alert.family == DIRT or o.key == alert.measurand_key]
-    proof = max(named or judged, key=lambda o: o.drawn_at or alert.since, default=None)
-    if proof is None or proof.drawn_at is None or proof.drawn_at <= alert.since:
+    later = later_word(alert, reservoir)
+    if later is None:
         return None
-    return proof if all(is_back(outlook, alert.kind) for outlook in judged) else None
+    return later if all(is_back(outlook, alert.kind) for outlook in _judged(alert.family, reservoir)) else None
+
+
+def new_oil_word(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | None:
+    """The first thing known of the family in an oil that was filled in after the alert's, or None."""
+    if alert.charge_id is None:
+        return None
+    on_new_oil = (
+        o
+        for o in of_family(reservoir.outlooks, alert.family)
+        if o.drawn_at and o.drawn_at > alert.since and o.charge_id not in (None, alert.charge_id)
+    )
+    return next(on_new_oil, None)
 
 
 def is_back(outlook: OutlookFacts, kind: Kind) -> bool:
@@ -249,6 +268,10 @@ def of_family(outlooks: Iterable[OutlookFacts], family: str) -> list[OutlookFact
         return found
     newest = max((o.drawn_at for o in found if o.drawn_at), default=None)
     return [outlook for outlook in found if outlook.drawn_at == newest]
+
+
+def _judged(family: str, reservoir: ReservoirFacts) -> list[OutlookFacts]:
+    return [o for o in of_family(reservoir.outlooks, family) if o.is_current and (o.has_target or o.has_limit)]
 
 
 def _speaker(outlook: OutlookFacts, rules: Sequence[RuleFacts], as_of: datetime) -> Speaker | None:

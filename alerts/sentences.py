@@ -72,13 +72,15 @@ def headline(finding: Finding, zone: tzinfo) -> str:
 
 
 def evidence(finding: Finding, zone: tzinfo) -> str:
-    """The finding in whole sentences: what was measured, against what, how fast it moves and what else speaks."""
+    """The finding in whole sentences: what was measured, against what, and what else speaks.
+
+    How fast it moves changes by the day and is said beside it, by `runway_sentence`.
+    """
     if finding.speaker is None:
         return _overdue_evidence(finding, zone)
     outlook = finding.speaker
     parts = [
         _measured(outlook, finding.kind, zone),
-        runway_sentence(outlook, zone),
         _companions(finding.companions),
         "Water is past its limit in the same bottle; an optical counter counts droplets too."
         if finding.water_too
@@ -169,9 +171,7 @@ def _companions(companions: Sequence[Speaker]) -> str:
 
 def _overdue_evidence(finding: Finding, zone: tzinfo) -> str:
     due = f"The sample planned for {day_text(finding.due_at, zone)} has not come. " if finding.due_at else ""
-    last = (
-        f"The last accepted one was drawn {day_text(finding.drawn_at, zone)}." if finding.drawn_at else "There is none."
-    )
+    last = f"The last one was drawn {day_text(finding.drawn_at, zone)}." if finding.drawn_at else "There is none."
     return f"{due}{last}"
 
 

@@ -1,0 +1,141 @@
+"""The mail that is owed: who gets it, and how each one is sent once.
+
+A delivery goes queued → sending → sent. It is claimed by a conditional update, so that of any number of workers one
+sends it, and once it is marked sent nothing sends it again. Between the mail server's yes and that mark a crash can
+make a second copy; it carries the same Message-ID, by which mail programs can tell. A send that fails waits longer each
+time; a claim whose worker died is freed by the sweep.
+"""
+
+import logging
+import smtplib
+from collections.abc import Iterable
+from datetime import datetime, timedelta
+from functools import partial
+from typing import Final
+
+from celery import current_app
+from django.conf import settings
+from django.core.exceptions import ValidationError
+from django.core.validators import validate_email
+from django.db import transaction
+from django.db.models import F, Q, QuerySet
+
+from alerts import mail
+from alerts.models import Alert, Delivery, Subscription
+from alerts.rules import Kind
+from fleet.models import Person
+
+logger = logging.getLogger(__name__)
+
+SEND_TASK: Final = "alerts.tasks.send_delivery"
+RETRY_MINUTES: Final = (1, 5, 15, 60, 240, 480, 960)
+MOST_ATTEMPTS: Final = len(RETRY_MINUTES) + 1
+BROKEN_OFF: Final = "Broken off while being sent."
+
+
+def subscriptions_to(alert: Alert, kind: str) -> QuerySet[Subscription]:
+    """Whose wishes an alert of that kind meets, by site, area and kind."""
+    area = alert.reservoir.area
+    return Subscription.objects.filter(
+        Q(area=None) | Q(area=area), Q(kind="") | Q(kind=kind), site=area.site_id, person__is_active=True
+    )
+
+
+def recipients(alert: Alert, kind: str) -> list[Person]:
+    """Active people with a usable address who asked for that kind of mail, each once."""
+    asked = Person.objects.filter(pk__in=subscriptions_to(alert, kind).values("person"))
+    return [person for person in asked if _is_address(person.email)]
+
+
+def is_news(alert: Alert, kind: Kind) -> bool:
+    """Whether a kind is graver than everything that was mailed about the alert before."""
+    mailed = Delivery.objects.filter(alert=alert, reason__in=list(Kind)).values_list("reason", flat=True).distinct()
+    return all(kind.is_graver_than(Kind(reason)) for reason in mailed)
+
+
+def owe(alert: Alert, reason: str, now: datetime) -> list[Person]:
+    """Make one delivery per recipient for this reason and have them sent after commit; who got one now."""
+    owed = []
+    for person in recipients(alert, reason):
+        delivery, new = Delivery.objects.get_or_create(
+            alert=alert, person=person, reason=reason, defaults={"address": person.email, "due_at": now}
+        )
+        if new:
+            owed.append(person)
+            enqueue([delivery.pk])
+    return owed
+
+
+def enqueue(delivery_ids: Iterable[int]) -> None:
+    """Ask a worker to send, after commit. A lost message does no harm: the sweep finds the row."""
+    for delivery_id in delivery_ids:
+        transaction.on_commit(partial(current_app.send_task, SEND_TASK, args=[delivery_id]), robust=True)
+
+
+def claim(delivery_id: int, now: datetime) -> bool:
+    """Take a delivery that is due; True for exactly one of all who try."""
+    taken = (
+        Delivery.objects.due(now)
+        .filter(pk=delivery_id)
+        .update(state=Delivery.State.SENDING, claimed_at=now, attempts=F("attempts") + 1)
+    )
+    return taken == 1
+
+
+def send(delivery_id: int, now: datetime) -> bool:
+    """Send one delivery if it can be claimed; True when the mail server took it and it is marked sent."""
+    if not claim(delivery_id, now):
+        return False
+    delivery = mail.with_everything(Delivery.objects.all()).get(pk=delivery_id)
+    if not delivery.person.is_active:
+        return _give_up(delivery, f"{delivery.person} is no longer active here.")
+    message = mail.build(delivery)
+    try:
+        message.send()
+    except (smtplib.SMTPException, OSError) as error:
+        logger.warning("Delivery %s, attempt %s: %s", delivery.pk, delivery.attempts, error)
+        return _put_back(delivery, now, f"{type(error).__name__}: {error}")
+    _claimed_rows(delivery).update(
+        state=Delivery.State.SENT, sent_at=now, last_error="", message_id=message.extra_headers["Message-ID"]
+    )
+    return True
+
+
+def send_due(now: datetime) -> int:
+    """Free claims whose worker is gone, and enqueue everything that is due; says how many."""
+    for delivery in Delivery.objects.stuck(now - timedelta(seconds=settings.DELIVERY_STUCK_SECONDS)):
+        _put_back(delivery, now, BROKEN_OFF, delay=timedelta())
+    due = list(Delivery.objects.due(now).values_list("pk", flat=True))
+    enqueue(due)
+    return len(due)
+
+
+def retry_delay(attempts: int) -> timedelta:
+    """How long to wait after that many failed attempts."""
+    return timedelta(minutes=RETRY_MINUTES[min(attempts, len(RETRY_MINUTES)) - 1])
+
+
+def _put_back(delivery: Delivery, now: datetime, error: str, delay: timedelta | None = None) -> bool:
+    if delivery.attempts >= MOST_ATTEMPTS:
+        return _give_up(delivery, error)
+    due_at = now + (retry_delay(delivery.attempts) if delay is None else delay)
+    _claimed_rows(delivery).update(state=Delivery.State.QUEUED, due_at=due_at, claimed_at=None, last_error=error[:500])
+    return False
+
+
+def _give_up(delivery: Delivery, error: str) -> bool:
+    _claimed_rows(delivery).update(state=Delivery.State.FAILED, claimed_at=None, last_error=error[:500])
+    return False
+
+
+def _claimed_rows(delivery: Delivery) -> QuerySet[Delivery]:
+    """The row, as long as it is still under the claim it was read with."""
+    return Delivery.objects.filter(pk=delivery.pk, state=Delivery.State.SENDING, claimed_at=delivery.claimed_at)
+
+
+def _is_address(text: str) -> bool:
+    try:
+        validate_email(text)
+    except ValidationError:
+        return False
+    return True

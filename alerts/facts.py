@@ -1,0 +1,94 @@
+"""From rows to the plain facts that the rules are asked with."""
+
+from collections.abc import Iterable
+
+from alerts.models import Alert, Rule
+from alerts.rules import Kind, OpenFacts, OutlookFacts, ReservoirFacts, RuleFacts
+from fleet.models import Measurand, Reservoir, Standing
+from samples.models import Outlook, Sample
+
+
+def rule_facts(rules: Iterable[Rule]) -> list[RuleFacts]:
+    return [
+        RuleFacts(
+            kind=Kind(rule.kind),
+            mails=rule.mails,
+            least_criticality=rule.least_criticality,
+            within_days=rule.within_days,
+            least_chance=rule.least_chance,
+            grace_days=rule.grace_days,
+        )
+        for rule in rules
+        if rule.enabled
+    ]
+
+
+def reservoir_facts(standing: Standing) -> ReservoirFacts:
+    """Two questions to the database: the outlooks, and the bottle that was drawn last."""
+    reservoir = standing.reservoir
+    outlooks = Outlook.objects.filter(reservoir=reservoir).select_related("measurand", "sample")
+    last = newest_sample(reservoir)
+    return ReservoirFacts(
+        criticality=reservoir.criticality,
+        interval_days=reservoir.interval_days,
+        zone=reservoir.area.site.zone,
+        outlooks=[outlook_facts(row) for row in outlooks if row.measurand.kind != Measurand.Kind.CODE],
+        last_sample_id=last.pk if last else None,
+        last_drawn_at=last.drawn_at if last else None,
+        next_due_at=standing.next_due_at,
+    )
+
+
+def newest_sample(reservoir: Reservoir) -> Sample | None:
+    """The last bottle that was not set aside; one in doubt was drawn all the same."""
+    drawn = Sample.objects.filter(reservoir=reservoir).exclude(verdict=Sample.Verdict.SET_ASIDE)
+    newest: Sample | None = drawn.order_by("-drawn_at", "-pk").first()
+    return newest
+
+
+def outlook_facts(row: Outlook) -> OutlookFacts:
+    measurand, sample = row.measurand, row.sample
+    return OutlookFacts(
+        key=measurand.key,
+        measurand_id=measurand.pk,
+        name=measurand.name,
+        family=measurand.family,
+        word=row.word,
+        unit=measurand.unit,
+        decimals=measurand.decimals,
+        is_count=measurand.kind == Measurand.Kind.COUNT,
+        is_percent=measurand.scale == Measurand.Scale.PERCENT and bool(row.baseline),
+        sample_id=row.sample_id,
+        drawn_at=sample.drawn_at if sample else None,
+        charge_id=sample.charge_id if sample else None,
+        n=row.n,
+        value=row.value,
+        low=row.low,
+        high=row.high,
+        baseline=row.baseline,
+        target_low=row.target_low,
+        target_high=row.target_high,
+        limit_low=row.limit_low,
+        limit_high=row.limit_high,
+        target_source=row.target_source,
+        limit_source=row.limit_source,
+        headroom=row.headroom,
+        runway=row.runway,
+        runway_early=row.runway_early,
+        runway_median=row.runway_median,
+        runway_late=row.runway_late,
+        past_since=row.past_since,
+        chance=row.chance_before_next,
+        next_planned_at=row.next_planned_at,
+        refusal_sentence=row.refusal_sentence,
+    )
+
+
+def open_facts(alert: Alert) -> OpenFacts:
+    return OpenFacts(
+        family=alert.family,
+        kind=Kind(alert.kind),
+        since=alert.sample.drawn_at if alert.sample else alert.opened_at,
+        measurand_key=alert.measurand.key if alert.measurand else "",
+        charge_id=alert.charge_id,
+    )
