@@ -42,7 +42,7 @@ def run_checks(
         expectations: one a measurand that was forecast.
         charge_began: when the oil in the reservoir was filled in; None where not known.
 
-    A hundredfold shift is told instead of "all counts moved" and "far off" for the counts, which it always brings along.
+    A hundredfold shift is told instead of "all counts moved" and "far off" for the counts, since it brings both along.
     """
     shifted = shifted_hundredfold(candidate, history)
     told = SIZE_LABELS if shifted else {}

@@ -19,7 +19,7 @@ _METAL_RISE: Final = 1.5
 
 
 def order_of_sizes(values: Mapping[str, float]) -> Doubt | None:
-    """Counts are cumulative (ISO 4406), so a larger size never holds more particles [1/mL] than a smaller one."""
+    """Counts are cumulative (ISO 4406): a larger size holds no more particles than a smaller one."""
     for sizes in (COUNTER_SIZES, MICROSCOPE_SIZES):
         known = [size for size in sizes if size in values]
         for small, large in pairwise(known):
@@ -34,7 +34,7 @@ def order_of_sizes(values: Mapping[str, float]) -> Doubt | None:
 
 
 def code_agrees_with_counts(candidate: CandidateSample) -> Doubt | None:
-    """The stated code against the code of the counts (ISO 4406, Table 1), size by size; ``≥`` marks are not compared."""
+    """The stated code against the code of the counts (ISO 4406, Table 1), by size; ``≥`` marks are not compared."""
     computed = _computed_code(candidate)
     if computed is None or candidate.code is None or not _differ(candidate.code, computed):
         return None

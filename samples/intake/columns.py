@@ -110,7 +110,7 @@ _TRAILING_UNIT: Final = re.compile(
 
 @dataclass(frozen=True, slots=True)
 class Column:
-    """One understood column: its place, its heading as written, the field it fills and its unit ("" where none); of counts, the basis."""
+    """One understood column: its place, heading as written, the field it fills, its unit or, of counts, its basis."""
 
     index: int
     heading: str

@@ -69,8 +69,8 @@ def read_table(data: bytes) -> Table:
     row. Cells are stripped, missing cells at the end of a row are "", and every row knows its line in the file.
 
     Raises:
-        ReadError: ``file_empty``, ``file_too_big``, ``file_not_text``, ``quote_unclosed``, ``heading_missing``,
-            ``heading_twice``, ``one_column``, ``rows_missing``, ``too_many_rows``.
+        ReadError: ``file_empty``, ``file_too_big``, ``file_not_text``, ``quote_unclosed``, ``cell_too_long``,
+            ``heading_missing``, ``heading_twice``, ``one_column``, ``rows_missing``, ``too_many_rows``.
     """
     if len(data) > MOST_BYTES:
         raise ReadError(
@@ -152,12 +152,18 @@ def _split(text: str, delimiter: str, skipped: int) -> list[tuple[int, list[str]
                 )
             first_line = skipped + reader.line_num + 1
     except csv.Error as error:
-        raise ReadError(
-            "quote_unclosed",
-            f"Line {first_line} has a quotation mark that does not belong there, or one that is never closed. "
-            "Correct that line and try again.",
-        ) from error
+        raise _broken_line(first_line, error) from error
     return lines
+
+
+def _broken_line(line: int, error: csv.Error) -> ReadError:
+    if "field limit" in str(error):
+        return ReadError("cell_too_long", f"Line {line} has a cell longer than any result. Check that it is a table.")
+    return ReadError(
+        "quote_unclosed",
+        f"Line {line} has a quotation mark that does not belong there, or one that is never closed. "
+        "Correct that line and try again.",
+    )
 
 
 def _checked_headings(raw: list[str]) -> tuple[str, ...]:
