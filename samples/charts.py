@@ -16,12 +16,11 @@ from samples.figures import ChartPlan, Dot, FanArea, Line, Mark, Step, figure
 from samples.history import History, Reported
 from samples.lines import code_number, figure_key, line_of
 from samples.models import Outlook
-from samples.outlooks import scale_spec, stretches_of
+from samples.outlooks import parameters_for, scale_spec, state_of, stretches_of
+from samples.trends import standing
 from samples.trends.arrays import DAYS_PER_MONTH
 from samples.trends.forecast import fan
-from samples.trends.level import LevelState
 from samples.trends.scales import Scale, ScaleSpec, from_scale
-from samples.trends.starting import starting_values
 from samples.trends.stretch import EventKind, Family, resets
 
 COUNT_STYLES = {
@@ -182,9 +181,9 @@ def _fan(history: History, outlook: Outlook | None, spec: ScaleSpec, now: dateti
     """The forecast from the latest sample on, from the state kept in the outlook; None where it is refused."""
     if outlook is None or outlook.sample is None or outlook.level is None or outlook.refusal not in {"", "no_limit"}:
         return None
-    kept = (outlook.level, outlook.drift, outlook.p_level, outlook.p_cross, outlook.p_drift, 0.0)
-    state = LevelState(*(np.array([part], dtype=np.float64) for part in kept), np.array([outlook.n]))
-    parameters, _ = starting_values(spec.scale)
+    state = state_of(outlook)
+    limit = standing.Line(high=outlook.limit_high, low=outlook.limit_low)
+    parameters = parameters_for(outlook.measurand, spec, limit).parameters
     start = outlook.sample.drawn_at
     ahead = (now - start).total_seconds() / 86400 / DAYS_PER_MONTH
     drawn = fan(state, parameters, horizon_months=ahead + FAN_MONTHS)

@@ -17,9 +17,12 @@ from samples.history import History, Reported, read_history
 from samples.lines import figure_key, line_of
 from samples.models import Outlook
 from samples.standings import standing_facts
+from samples.trends.arrays import DAYS_PER_MONTH
+from samples.trends.level import LevelParameters, LevelRun, LevelState, run_filter
 from samples.trends.outlook import OutlookNumbers, OutlookQuestion, StretchResults, build
-from samples.trends.scales import Scale, ScaleSpec
-from samples.trends.starting import starting_values
+from samples.trends.scales import Scale, ScaleSpec, observe
+from samples.trends.standing import Line
+from samples.trends.starting import StartingValues, starting_values
 from samples.trends.stretch import EventKind, EventMark, Family, Stretch, latest, split
 
 WORDS = {
@@ -99,16 +102,45 @@ def scale_spec(measurand: Measurand, baseline: float | None) -> ScaleSpec:
     return ScaleSpec(scale, 2.0 * measurand.scale_offset or 1.0, baseline)
 
 
+def parameters_for(measurand: Measurand, spec: ScaleSpec, limit: Line) -> StartingValues:
+    """The filter's parameters for a measurand; on the plain scale they are stretched to its span, unless it is acid."""
+    span = 1.0
+    if spec.scale is Scale.LINEAR and measurand.key != "acid_number":
+        figure = limit.high if limit.high is not None else limit.low
+        span = abs((figure or 0.0) - (spec.baseline or 0.0)) or 1.0
+    return starting_values(spec.scale, Family(measurand.family), span)
+
+
 def stretches_of(history: History, series: Sequence[Reported], family: str) -> list[Stretch]:
     """The series cut where a point, charge, laboratory, method or size scale changes and where an event resets it."""
-    marks = [
-        EventMark(day_of(event.ended_at or event.at), EventKind(event.kind), event.litres) for event in history.events
-    ]
     keys = [
         (r.sample.point_id, r.sample.charge_id, r.sample.laboratory_id, r.result.method, r.result.size_scale)
         for r in series
     ]
-    return split([day_of(r.drawn_at) for r in series], keys, marks, Family(family), history.reservoir.volume_l)
+    return split(
+        [day_of(r.drawn_at) for r in series], keys, event_marks(history), Family(family), history.reservoir.volume_l
+    )
+
+
+def event_marks(history: History) -> list[EventMark]:
+    """What was done to the oil, at the moment it was finished."""
+    return [
+        EventMark(day_of(event.ended_at or event.at), EventKind(event.kind), event.litres) for event in history.events
+    ]
+
+
+def filter_results(series: Sequence[Reported], spec: ScaleSpec, parameters: LevelParameters) -> LevelRun:
+    """The trend filter over results of one stretch."""
+    given = _results(series)
+    observed = observe(given.values, given.lows, given.highs, given.qualifiers, spec)
+    return run_filter(given.days / DAYS_PER_MONTH, observed.y, parameters, None, observed.extra_variance)
+
+
+def state_of(outlook: Outlook) -> LevelState:
+    """The filter's state as it was kept, at its own moment nought."""
+    kept = (outlook.level, outlook.drift, outlook.p_level, outlook.p_cross, outlook.p_drift, 0.0)
+    a, b, p11, p12, p22, at = (np.array([part], dtype=np.float64) for part in kept)
+    return LevelState(a, b, p11, p12, p22, at, np.array([outlook.n], dtype=np.int64))
 
 
 def day_of(moment: datetime) -> float:
@@ -146,14 +178,15 @@ def _question(
 ) -> OutlookQuestion:
     judged_at = current[-1].drawn_at if current else now
     key = figure_key(measurand.key)
-    parameters, name = starting_values(spec.scale)
+    limit = line_of(history.limit_at(key, judged_at), measurand.key, spec)
+    used = parameters_for(measurand, spec, limit)
     return OutlookQuestion(
         spec=spec,
         target=line_of(history.target_at(key, judged_at), measurand.key, spec),
-        limit=line_of(history.limit_at(key, judged_at), measurand.key, spec),
+        limit=limit,
         as_of_day=day_of(now),
-        parameters=parameters,
-        parameters_name=name,
+        parameters=used.parameters,
+        parameters_name=used.name,
         interval_days=float(history.reservoir.interval_days),
     )
 
