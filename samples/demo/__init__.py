@@ -1,0 +1,1 @@
+"""The made-up plant that a new database is filled with: Fernhollow Board Mill. Nothing here is real."""
