@@ -14,7 +14,7 @@ from fleet.refresh import want_refresh
 from samples.checks.battery import hard_errors, run_checks
 from samples.checks.candidates import CandidateSample, Doubt, PastEvent, PastSample
 from samples.expectations import Bottle, expectations
-from samples.history import History, read_history
+from samples.history import History
 from samples.models import Doubt as DoubtRow
 from samples.models import IntakeFile, Laboratory, Result, Sample
 from samples.readings import Reading
@@ -108,12 +108,7 @@ def unsaved_results(entry: SampleEntry) -> list[Result]:
 
 
 def save_entry(
-    entry: SampleEntry,
-    *,
-    by: Person | None,
-    now: datetime,
-    history: History | None = None,
-    intake: IntakeFile | None = None,
+    entry: SampleEntry, history: History, *, by: Person | None, now: datetime, intake: IntakeFile | None = None
 ) -> Sample:
     """Save one sample with its results and doubts in one transaction, and ask for a fresh outlook.
 
@@ -121,7 +116,7 @@ def save_entry(
     """
     if not entry.readings:
         raise EntryError("no_result", "paste", "There is no result yet. Give a code, counts or at least one figure.")
-    found = preview(entry, history or read_history(entry.reservoir), now)
+    found = preview(entry, history, now)
     if found.errors:
         first = found.errors[0]
         raise EntryError(first.code, _field_of(first.code), f"{first.sentence} {first.settles}".strip())
