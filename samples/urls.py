@@ -1,5 +1,9 @@
 """Addresses of the samples app."""
 
-from django.urls import URLPattern
+from django.urls import URLPattern, path
 
-urlpatterns: list[URLPattern] = []
+from samples.views.reservoir import reservoir
+
+urlpatterns: list[URLPattern] = [
+    path("reservoirs/<str:tag>/", reservoir, name="reservoir"),
+]
