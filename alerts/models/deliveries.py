@@ -4,6 +4,7 @@ from django.db import models
 from django.db.models import Q
 
 from alerts.models.alerts import Alert
+from alerts.models.rules import Rule
 from alerts.querysets import DeliveryQuerySet
 from fleet.models import Person
 
@@ -45,3 +46,6 @@ class Delivery(models.Model):
 
     def __str__(self) -> str:
         return f"{self.reason} to {self.address}: {self.state}"
+
+    def get_reason_display(self) -> str:
+        return str(dict(Rule.Kind.choices).get(self.reason, self.reason))

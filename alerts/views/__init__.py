@@ -1,0 +1,1 @@
+"""Pages of the alerts app: one module a noun."""
