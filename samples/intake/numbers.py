@@ -107,7 +107,7 @@ def read_number(text: str, *, decimal_mark: DecimalMark | None = None, negative:
     >>> read_number("<5").qualifier, read_number("45,1").value, read_number("ND").state, read_number("n/a").state
     ('<', Decimal('45.1'), 'undetected', 'missing')
     """
-    reported = text.strip()
+    reported = " ".join(text.split())
     cleaned = reported.translate(_SPELLINGS).strip()
     if cleaned.casefold() in _MISSING:
         return ReadNumber("missing", reported)
