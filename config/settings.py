@@ -7,10 +7,13 @@ without a secret key, and turns on every cookie and transport guard.
 from datetime import timedelta
 from pathlib import Path
 
+import django_stubs_ext
 import plotly
 from csp.constants import NONE, SELF, UNSAFE_INLINE
 from django.core.exceptions import ImproperlyConfigured
 from environs import Env
+
+django_stubs_ext.monkeypatch()
 
 BASE_DIR = Path(__file__).resolve().parent.parent
 
