@@ -1,11 +1,41 @@
 """Setting targets and limits. A new figure stands beside the old one; whoever it applies to is looked at afresh."""
 
-from datetime import datetime
+from dataclasses import dataclass
+from datetime import date, datetime
 
-from fleet.models import Person, Reservoir, Scope
+from fleet.figures import figure_for
+from fleet.models import Limit, Measurand, Person, Reservoir, Scope, Target
 from fleet.models.targets import Figure
 from fleet.refresh import want_refresh
 from fleet.refusals import refusing
+
+
+@dataclass(frozen=True, slots=True)
+class InForce:
+    """What a reservoir is held to for one measurand on a day."""
+
+    measurand: Measurand
+    target: Target | None
+    limit: Limit | None
+
+
+def in_force(reservoir: Reservoir, day: date, now: datetime) -> list[InForce]:
+    """The target and limit of each measurand that a sample drawn on `day` from the oil of `now` is judged by."""
+    charge = reservoir.charge_on(now)
+    fluid_id = charge.fluid_id if charge else None
+    fluids = {fluid_id} if fluid_id else set()
+    target_rows = list(Target.objects.for_reservoir(reservoir, fluids))
+    limit_rows = list(Limit.objects.for_reservoir(reservoir, fluids))
+    measurands = {row.measurand.key: row.measurand for row in (*target_rows, *limit_rows)}
+    found = [
+        InForce(
+            measurand,
+            figure_for(target_rows, key, day, fluid_id),
+            figure_for(limit_rows, key, day, fluid_id),
+        )
+        for key, measurand in measurands.items()
+    ]
+    return sorted((line for line in found if line.target or line.limit), key=lambda line: line.measurand.position)
 
 
 def set_figure(figure: Figure, author: Person, now: datetime) -> Figure:

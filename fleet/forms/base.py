@@ -1,5 +1,7 @@
 """What every form of the register has in common: figures with a comma, site time, plain sentences for broken rules."""
 
+from __future__ import annotations
+
 from collections.abc import Iterator
 from datetime import UTC, datetime
 from typing import TYPE_CHECKING, Any, ClassVar, cast

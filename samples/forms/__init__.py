@@ -1,0 +1,1 @@
+"""What people fill in about samples."""
