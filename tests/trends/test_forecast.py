@@ -114,9 +114,11 @@ def test_runways_of_many_series_are_those_of_each() -> None:
 
 
 def test_the_nearer_side_is_the_one_that_ends_first() -> None:
-    soon, late = (
-        Runway(*(np.array([x]) for x in ends), np.array([False])) for ends in ((1.0, 3.0, np.nan), (2.0, 2.5, 4.0))
-    )
+    def ending(*ends: float) -> Runway:
+        early, median, late = (np.array([end]) for end in ends)
+        return Runway(early, median, late, np.array([False]))
+
+    soon, late = ending(1.0, 3.0, np.nan), ending(2.0, 2.5, 4.0)
     assert nearer(soon, late)[1][0] == 1
     found, side = nearer(late, soon)
     assert (side[0], found.early[0]) == (-1, 1.0)

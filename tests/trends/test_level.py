@@ -25,9 +25,12 @@ def test_the_nile_series_gives_the_level_of_the_book() -> None:
     assert run.state.p11[0] + BOOK.q + BOOK.r == pytest.approx(20600.258, abs=5e-4)
 
 
-def test_the_nile_likelihood_is_highest_where_the_reference_library_finds_it() -> None:
-    best = LevelParameters(q=1478.8, r=15078.0, tau=0.0, c=inf)
-    assert run_filter(np.arange(100.0), nile(), best).log_likelihood[0] == pytest.approx(-632.53776, abs=5e-6)
+@pytest.mark.parametrize(("r", "q"), [(15099.0, 1469.1), (15078.0, 1478.8), (12000.0, 3000.0)])
+def test_the_nile_likelihood_is_that_of_the_reference_library(r: float, q: float) -> None:
+    # Exactly diffuse start; the library's usual start with a variance of 1e6 gives -632.53776 at its highest.
+    reference = UnobservedComponents(nile(), "llevel", use_exact_diffuse=True).smooth([r, q])
+    run = run_filter(np.arange(100.0), nile(), LevelParameters(q, r, 0.0, inf))
+    assert run.log_likelihood[0] == pytest.approx(reference.llf_obs[1:].sum(), rel=1e-10)
 
 
 @pytest.mark.parametrize("seed", range(5))
@@ -38,9 +41,9 @@ def test_local_level_agrees_with_statsmodels(seed: int) -> None:
     model = UnobservedComponents(y, "llevel", use_exact_diffuse=True)
     reference = model.smooth([r, q])
     run = run_filter(np.arange(40.0), y, LevelParameters(q, r, 0.0, inf))
-    assert run.state.a[0] == pytest.approx(reference.filtered_state[0, -1], rel=1e-9)
-    assert run.state.p11[0] == pytest.approx(reference.filtered_state_cov[0, 0, -1], rel=1e-9)
-    assert run.predicted_mean[0, 1:] == pytest.approx(reference.forecasts[0, 1:], rel=1e-8)
+    assert run.state.a[0] == pytest.approx(reference.filtered_state[0, -1], abs=1e-7)
+    assert run.state.p11[0] == pytest.approx(reference.filtered_state_cov[0, 0, -1], abs=1e-7)
+    assert run.predicted_mean[0, 1:] == pytest.approx(reference.forecasts[0, 1:], abs=1e-6)
 
 
 @pytest.mark.parametrize("seed", range(5))
