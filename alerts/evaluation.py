@@ -31,6 +31,7 @@ from alerts.rules import (
     later_word,
     new_oil_word,
     proof_it_is_over,
+    still_away,
 )
 from fleet.models import Site, Standing
 
@@ -229,7 +230,7 @@ def _reconsider(case: _Case, alert: Alert) -> None:
         note = sentences.over_sentence(proof, case.about.zone)
         _close_by_itself(case, alert, Alert.CloseReason.SHOWN_OVER, note)
     elif (later := later_word(known, case.about)) is not None:
-        _note_recovery(case, alert, later)
+        _note_recovery(case, alert, later, still_away(known, case.about) or later)
 
 
 def _close_when_sampled(case: _Case, alert: Alert) -> None:
@@ -245,10 +246,9 @@ def _close_by_itself(case: _Case, alert: Alert, reason: str, note: str) -> None:
     tell(alert, case.as_of, f"Closed: {note}")
 
 
-def _note_recovery(case: _Case, alert: Alert, later: OutlookFacts) -> None:
+def _note_recovery(case: _Case, alert: Alert, later: OutlookFacts, away: OutlookFacts) -> None:
     """Better, but not by enough: it stays open and rests on the later sample now."""
-    said = sentences.over_sentence(later, case.about.zone)
-    sentence = f"{said} That is better, but not far enough inside to call it over."
+    sentence = sentences.recovery_sentence(away, case.about.zone)
     _write(alert, {"sample_id": later.sample_id, "sentence": sentence, "updated_at": case.as_of})
     tell(alert, case.as_of, sentence)
 

@@ -81,6 +81,7 @@ def outlook_facts(row: Outlook) -> OutlookFacts:
         chance=row.chance_before_next,
         next_planned_at=row.next_planned_at,
         refusal_sentence=row.refusal_sentence,
+        computed_at=row.computed_at,
     )
 
 

@@ -100,6 +100,7 @@ class OutlookFacts:
     chance: float | None = None
     next_planned_at: datetime | None = None
     refusal_sentence: str = ""
+    computed_at: datetime | None = None
 
     @property
     def has_target(self) -> bool:
@@ -108,6 +109,18 @@ class OutlookFacts:
     @property
     def has_limit(self) -> bool:
         return self.limit_low is not None or self.limit_high is not None
+
+    @property
+    def trend_is_past(self) -> bool:
+        """The trend stands past the limit while the latest value does not: one of the two is wrong."""
+        if self.word == "past_limit" or self.runway_median is None or self.computed_at is None:
+            return False
+        return self.runway == "dated" and self.runway_median <= self.computed_at
+
+    @property
+    def is_undecided(self) -> bool:
+        """Within target by its value, past the limit by its trend: the next sample tells which."""
+        return self.word == "within_target" and self.trend_is_past
 
     @property
     def is_current(self) -> bool:
@@ -219,10 +232,15 @@ def is_recent(drawn_at: datetime | None, interval_days: int, as_of: datetime) ->
 
 def later_word(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | None:
     """What was measured on an alert's measurand after the sample it rests on; particle counts stand for each other."""
-    judged = _judged(alert.family, reservoir)
-    named = [o for o in judged if alert.family == DIRT or o.key == alert.measurand_key]
-    newest = max(named, key=lambda o: o.drawn_at or alert.since, default=None)
-    return newest if newest and newest.drawn_at and newest.drawn_at > alert.since else None
+    later = [o for o in _judged(alert.family, reservoir) if o.drawn_at and o.drawn_at > alert.since]
+    own = next((o for o in later if o.key == alert.measurand_key), None)
+    return own or next((o for o in later if alert.family == DIRT), None)
+
+
+def still_away(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | None:
+    """The measurand of the family that is furthest from being back, or None when all are."""
+    away = [o for o in _judged(alert.family, reservoir) if not is_back(o, alert.kind)]
+    return min(away, key=lambda o: inf if o.headroom is None else o.headroom, default=None)
 
 
 def proof_it_is_over(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | None:
@@ -231,12 +249,10 @@ def proof_it_is_over(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFact
     The measurand that opened it must have been measured later, and every current measurand of the family must be back.
     *Back* is: within its target; or, for an alert about a limit, inside the limit by one code step, or by 10 % of the
     span. An alert over target asks for the target. A margin keeps a value that dances on the line from closing and
-    opening the alert with every sample.
+    opening the alert with every sample. Where the trend had followed the trouble, one good value against it does not
+    settle which is wrong: it takes a second one, or an event on record that begins a new stretch.
     """
-    later = later_word(alert, reservoir)
-    if later is None:
-        return None
-    return later if all(is_back(outlook, alert.kind) for outlook in _judged(alert.family, reservoir)) else None
+    return later_word(alert, reservoir) if still_away(alert, reservoir) is None else None
 
 
 def new_oil_word(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | None:
@@ -253,6 +269,8 @@ def new_oil_word(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | 
 
 def is_back(outlook: OutlookFacts, kind: Kind) -> bool:
     """Whether one measurand is back where an alert of that kind wants it."""
+    if outlook.is_undecided:
+        return False
     if outlook.word == "within_target" and (outlook.has_target or outlook.headroom is None):
         return True
     if kind is Kind.OVER_TARGET and outlook.has_target:
@@ -282,7 +300,8 @@ def _speaker(outlook: OutlookFacts, rules: Sequence[RuleFacts], as_of: datetime)
 
 def _speaks(rule: RuleFacts, outlook: OutlookFacts, as_of: datetime) -> bool:
     if rule.kind is Kind.FORECAST:
-        return outlook.word != Kind.PAST_LIMIT and (_soon(rule, outlook, as_of) or _likely(rule, outlook))
+        told = outlook.word == Kind.PAST_LIMIT or outlook.is_undecided
+        return not told and (_soon(rule, outlook, as_of) or _likely(rule, outlook))
     return outlook.word == rule.kind
 
 
