@@ -61,10 +61,23 @@ def plant_field(column: models.Field[Any, Any], **more: Any) -> forms.Field | No
     elif isinstance(column, models.DateTimeField):
         more["form_class"] = SiteTimeField
     elif isinstance(column, models.DateField):
-        more["widget"] = forms.DateInput(attrs={"type": "date"}, format="%Y-%m-%d")
+        more["widget"] = forms.DateInput(attrs={"type": "date", "class": "moment"}, format="%Y-%m-%d")
+    elif isinstance(column, models.IntegerField):
+        more["widget"] = forms.NumberInput(attrs={"class": "short"})
     elif isinstance(column, models.TextField):
         more["widget"] = forms.Textarea(attrs={"rows": 3})
     return column.formfield(**more)
+
+
+def _say_nothing_chosen(field: forms.Field) -> None:
+    """Words for the empty choice, instead of a row of dashes."""
+    words = "choose" if field.required else "none"
+    if isinstance(field, forms.ModelChoiceField):
+        if field.empty_label is not None:
+            field.empty_label = words
+    elif isinstance(field, forms.ChoiceField):
+        offered = cast("list[tuple[Any, Any]]", field.choices)
+        field.choices = [(value, words if value == "" else label) for value, label in offered]
 
 
 class PlantMeta:
@@ -76,17 +89,21 @@ class PlantMeta:
 class PlantForm(ModelForm):
     """A form of the register. `now` is when the page was asked for; `groups` are its parts with their headings.
 
+    `narrowed_by` names what an address may give (?reservoir=5) to offer fewer choices, beside the fields themselves.
     `left_to_saving` names the rules that hold only after saving has made room: the subject checks them.
     """
 
     groups: ClassVar[list[tuple[str, list[str]]]] = []
     site_times: ClassVar[tuple[str, ...]] = ()
     caution: ClassVar[str] = ""
+    narrowed_by: ClassVar[tuple[str, ...]] = ()
     left_to_saving: ClassVar[tuple[str, ...]] = ()
 
     def __init__(self, *args: Any, now: datetime, **more: Any) -> None:
         super().__init__(*args, **more)
         self.now = now
+        for field in self.fields.values():
+            _say_nothing_chosen(field)
         for name in self.site_times:
             moment = self.initial.get(name)
             site = self.known_site()

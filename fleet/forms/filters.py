@@ -35,6 +35,7 @@ class ElementForm(PlantForm):
         ("Its rating", ["rating_kind", "beta", "beta_size_um", "rating_um"]),
         ("", ["found", "removal_note"]),
     ]
+    narrowed_by = ("reservoir",)
     left_to_saving = ("element_no_overlap",)
     caution = (
         "Isolate, lock and tag, and release stored pressure before a housing is opened; hot oil burns. "
@@ -59,6 +60,8 @@ class ElementForm(PlantForm):
         chooser.queryset = FilterPosition.objects.select_related("reservoir__machine", "reservoir__area__site")
         chooser.label_from_instance = _with_reservoir  # type: ignore[method-assign,assignment]
         self.is_new = self.instance.pk is None
+        if self.is_new and self.initial.get("reservoir"):
+            chooser.queryset = chooser.queryset.filter(reservoir=self.initial["reservoir"])
         if not self.is_new:
             chooser.disabled = True
         for name in ("removed_on", "removal_note") if self.is_new else ("found",):

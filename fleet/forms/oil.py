@@ -6,6 +6,7 @@ from django.core.exceptions import ValidationError
 
 from fleet.forms.base import PlantForm, PlantMeta
 from fleet.models import Event, Fluid, OilCharge, Reservoir, Site
+from fleet.site_time import written_at
 
 NEEDS_LITRES = (Event.Kind.TOP_UP, Event.Kind.PARTIAL_CHANGE)
 
@@ -100,6 +101,12 @@ class EventForm(ReservoirClockForm):
             "litres": "For a top-up or a partial change always; for an oil change when it differs from the volume.",
             "fluid": "The oil filled in. Left empty, it is the oil that was in it.",
         }
+
+    def __init__(self, *args: Any, **more: Any) -> None:
+        super().__init__(*args, **more)
+        given = Reservoir.objects.with_place().filter(pk=self.initial.get("reservoir") or 0).first()
+        if self.instance.pk is None and given is not None:
+            self.initial["at"] = written_at(self.now, given.area.site.zone)
 
     def clean(self) -> dict[str, Any]:
         cleaned = super().clean()

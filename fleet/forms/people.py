@@ -3,6 +3,7 @@
 from typing import Any
 
 from django import forms
+from django.contrib.auth.forms import AuthenticationForm
 from django.contrib.auth.password_validation import password_validators_help_texts, validate_password
 from django.core.exceptions import ValidationError
 
@@ -56,6 +57,17 @@ class PersonForm(PlantForm):
         if password := self.cleaned_data.get("password"):
             person.set_password(password)
         return person
+
+
+class LoginForm(AuthenticationForm):
+    error_messages = {
+        **AuthenticationForm.error_messages,
+        "invalid_login": "That login name and password do not go together. Both mind capital letters.",
+    }
+
+    def __init__(self, *args: Any, **more: Any) -> None:
+        super().__init__(*args, **more)
+        self.fields["username"].label = "login name"
 
 
 class AccountForm(PlantForm):

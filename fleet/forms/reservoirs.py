@@ -24,7 +24,10 @@ class ReservoirForm(PlantForm):
         label="sample point", max_length=60, initial="SP-1", help_text="As it stands on the valve."
     )
     point_place = forms.CharField(
-        label="where it is", max_length=120, required=False, help_text="Return line before the filter, live valve."
+        label="where on the machine",
+        max_length=120,
+        required=False,
+        help_text="Return line before the filter, live valve.",
     )
     first_only = ("new_machine", "fluid", "filled_at", "point_name", "point_place")
     site_times = ("filled_at",)

@@ -12,7 +12,7 @@ from django.utils.decorators import method_decorator
 
 from fleet.access import require, role_required
 from fleet.forms.base import summary
-from fleet.forms.people import AccountForm
+from fleet.forms.people import AccountForm, LoginForm
 from fleet.models import Person, Role
 
 MAY = {
@@ -26,6 +26,7 @@ MAY = {
 @method_decorator(login_not_required, name="dispatch")
 class Login(LoginView):
     template_name = "registration/login.html"
+    authentication_form = LoginForm
     redirect_authenticated_user = True
 
 

@@ -125,7 +125,7 @@ def _section(person: Person, part: Section, row: Model) -> dict[str, Any]:
     noun, within = NOUNS[part.noun], part.within
     found = list(noun.rows().filter(**{noun.within[within]: row.pk})[: A_SECTION + 1])
     query = urlencode({within: row.pk})
-    fits_form = within in noun.form.base_fields
+    fits_form = within in noun.form.base_fields or within in noun.form.narrowed_by
     return {
         "noun": noun,
         "title": part.title or noun.many,

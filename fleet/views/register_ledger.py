@@ -39,9 +39,9 @@ class Ledger:
 def ledger_of(noun: Noun, rows: Iterable[Any], sort: str = "", here: str = "", without: str = "") -> Ledger:
     """The rows under the noun's columns. `here`: the page's address without its sort, for headings that sort.
 
-    `without` leaves out the column that would repeat the page's own name in every row.
+    `without` leaves out the columns that would repeat the page's own name in every row.
     """
-    columns = [column for column in noun.columns if not without or column.label.lower() != without]
+    columns = [column for column in noun.columns if not without or column.about != without]
     return Ledger(
         noun.many,
         [_heading(column, sort, here) for column in columns],

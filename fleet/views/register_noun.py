@@ -53,12 +53,16 @@ def words_in(*paths: str) -> Callable[[QuerySet[Any], str], QuerySet[Any]]:
 
 @dataclass(frozen=True, slots=True)
 class Column:
-    """One column of a list and one line of a detail page. The unit stands in the label."""
+    """One column of a list and one line of a detail page. The unit stands in the label.
+
+    `about` names the page on which the column would say the same in every row, and where it is left out.
+    """
 
     label: str
     show: Callable[[Any], object]
     sort: str = ""
     numeric: bool = False
+    about: str = ""
     link: Callable[[Any], str] | None = None
 
 
@@ -98,6 +102,7 @@ class Noun:
     parent: str = ""
     listed: int = 0
     intro: str = ""
+    add: str = "Add"
     edit_note: str = ""
     remove_note: str = ""
     save: Save = save_form
@@ -108,8 +113,9 @@ class Noun:
         return self.many.replace(" ", "-")
 
     @property
-    def article(self) -> str:
-        return "an" if self.one[0] in "aeio" else "a"
+    def add_words(self) -> str:
+        """What the button says: Add a site, Log an event, Fit an element."""
+        return f"{self.add} {'an' if self.one[0] in 'aeio' else 'a'} {self.one}"
 
     @property
     def list_name(self) -> str:

@@ -70,7 +70,7 @@ AREA = known(
         within={"site": "site"},
         columns=(
             Column("Area", attrgetter("name"), sort="name"),
-            Column("Site", attrgetter("site.name"), sort="site__name"),
+            Column("Site", attrgetter("site.name"), sort="site__name", about="site"),
             Column("Machines", attrgetter("machine_count"), numeric=True, sort="machine_count"),
             Column("Reservoirs", attrgetter("reservoir_count"), numeric=True, sort="reservoir_count"),
         ),
@@ -94,7 +94,7 @@ MACHINE = known(
         columns=(
             Column("Machine", attrgetter("name"), sort="name"),
             Column("Tag", attrgetter("tag"), sort="tag"),
-            Column("Area", attrgetter("area.name"), sort="area__name"),
+            Column("Area", attrgetter("area.name"), sort="area__name", about="area"),
             Column("Reservoirs", attrgetter("reservoir_count"), numeric=True, sort="reservoir_count"),
         ),
         more=(
@@ -123,7 +123,7 @@ RESERVOIR = known(
         columns=(
             Column("Reservoir", str, sort="machine__name"),
             Column("Tag", attrgetter("tag"), sort="tag"),
-            Column("Area", attrgetter("area.name"), sort="area__name"),
+            Column("Area", attrgetter("area.name"), sort="area__name", about="area"),
             Column("Class", lambda row: row.get_reservoir_class_display(), sort="reservoir_class"),
             Column("Criticality", attrgetter("criticality"), sort="criticality"),
             Column("Volume, L", attrgetter("volume_l"), numeric=True, sort="volume_l"),
@@ -174,7 +174,13 @@ POINT = known(
         save=_save_point,
         columns=(
             Column("Sample point", attrgetter("name"), sort="name"),
-            Column("Reservoir", attrgetter("reservoir"), sort="reservoir__machine__name", link=reservoir_page),
+            Column(
+                "Reservoir",
+                attrgetter("reservoir"),
+                sort="reservoir__machine__name",
+                about="reservoir",
+                link=reservoir_page,
+            ),
             Column("Where it is", attrgetter("place")),
             Column("Planned", attrgetter("is_default")),
             Column("May be drawn running", attrgetter("may_sample_running")),
@@ -197,7 +203,13 @@ ALIAS = known(
         parent="reservoir",
         columns=(
             Column("Other name", attrgetter("name"), sort="name"),
-            Column("Reservoir", attrgetter("reservoir"), sort="reservoir__machine__name", link=reservoir_page),
+            Column(
+                "Reservoir",
+                attrgetter("reservoir"),
+                sort="reservoir__machine__name",
+                about="reservoir",
+                link=reservoir_page,
+            ),
             Column("Used from", attrgetter("valid_from"), sort="valid_from"),
             Column("Used until", attrgetter("valid_to"), sort="valid_to"),
         ),
