@@ -10,6 +10,7 @@ import pytest
 import redis
 
 from config.stack.broker import Broker, start_broker
+from config.stack.children import Program
 from config.stack.database import Database, kept_database, start_database
 from config.stack.errors import StackError
 from config.stack.supervisor import Supervisor
@@ -52,9 +53,12 @@ def test_data_and_socket_are_closed_to_everyone_else(database: Database) -> None
 
 def test_a_lock_that_names_a_living_stranger_is_forgotten(database: Database) -> None:
     with_server(database, write_a_row)
-    (database.data / "postmaster.pid").write_text(f"{os.getpid()}\n{database.data}\n")
-    (database.sockets / ".s.PGSQL.5432.lock").write_text(f"{os.getpid()}\n")
-    assert with_server(database, read_the_row) == (42,)
+    stranger = Program("a stranger", ("sleep", "600"), {"PATH": "/usr/bin:/bin"}, Path("/"), account=database.account)
+    with Supervisor(quiet) as supervisor:
+        pid = supervisor.start(stranger).pid
+        (database.data / "postmaster.pid").write_text(f"{pid}\n{database.data}\n")
+        (database.sockets / ".s.PGSQL.5432.lock").write_text(f"{pid}\n")
+        assert with_server(database, read_the_row) == (42,)
 
 
 def test_a_server_that_outlived_its_supervisor_is_stopped_first(database: Database) -> None:
