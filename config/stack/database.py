@@ -15,6 +15,7 @@ from config.stack.binaries import postgres_home, readable_copy
 from config.stack.children import Child, Program
 from config.stack.errors import StackError
 from config.stack.folders import digest, private_folder, socket_folder
+from config.stack.leash import ON_LINUX
 from config.stack.supervisor import Supervisor
 
 NAME = USER = "siltwatch"
@@ -146,8 +147,18 @@ def _first_number(lock: Path) -> int:
 
 def _serves(pid: int, data: Path) -> bool:
     """Whether that process is a PostgreSQL on this data: after a restart its number may be anybody's."""
-    shown = subprocess.run(["ps", "-ww", "-o", "command=", "-p", str(pid)], capture_output=True, text=True, check=False)
-    return "postgres" in shown.stdout and str(data) in shown.stdout
+    command = _command(pid)
+    return "postgres" in command and str(data) in command
+
+
+def _command(pid: int) -> str:
+    """The command line of a process, empty when there is none."""
+    if not ON_LINUX:
+        shown = subprocess.run(["ps", "-ww", "-o", "command=", "-p", str(pid)], capture_output=True, check=False)
+        return os.fsdecode(shown.stdout)
+    with contextlib.suppress(FileNotFoundError, ProcessLookupError):
+        return os.fsdecode(Path(f"/proc/{pid}/cmdline").read_bytes())
+    return ""
 
 
 def _wait_ready(database: Database, child: Child) -> None:
