@@ -90,7 +90,7 @@ def _load(as_of: datetime) -> Site:
         _set_figures(written, measurands, as_of.date() - timedelta(days=HISTORY_DAYS))
         charges = _write_events(written, history)
         _write_samples(written, history, charges, laboratories, measurands)
-        _doubt_dirty_bottles(written, history, as_of)
+        _doubt_dirty_bottles(written, history, measurands, as_of)
         refresh_outlook(written.reservoir.pk, as_of)
     return site
 
@@ -235,7 +235,7 @@ def _write_samples(
     )
 
 
-def _doubt_dirty_bottles(written: Written, history: History, as_of: datetime) -> None:
+def _doubt_dirty_bottles(written: Written, history: History, measurands: dict[str, Measurand], as_of: datetime) -> None:
     """What the checks say of a bottle that was dirty: an old one was set aside, the latest waits for a person."""
     for back in story_of(written.plan.story, written.plan.interval_days).dirty_bottles:
         record = read_history(written.reservoir)
@@ -244,7 +244,7 @@ def _doubt_dirty_bottles(written: Written, history: History, as_of: datetime) ->
         entry = SampleEntry(
             written.reservoir, written.point, sample.laboratory, facts, _readings(history.samples[-back])
         )
-        for doubt in preview(entry, record, as_of).doubts:
+        for doubt in preview(entry, record, as_of, measurands).doubts:
             Doubt.objects.create(sample=sample, code=doubt.code, sentence=doubt.sentence, settles=doubt.settles)
         sample.verdict = Sample.Verdict.IN_DOUBT if back == 1 else Sample.Verdict.SET_ASIDE
         sample.verdict_reason = "" if back == 1 else "The bottle was dirty; the repeat was clean."

@@ -76,7 +76,8 @@ class Doubt(models.Model):
 
     class Meta:
         ordering = ["sample", "pk"]
-        constraints = [models.UniqueConstraint(fields=["sample", "code"], name="doubt_once_a_sample")]
+        # The same check may doubt several figures of one bottle, each with a sentence of its own.
+        constraints = [models.UniqueConstraint(fields=["sample", "code", "sentence"], name="doubt_once_a_sample")]
 
     def __str__(self) -> str:
         return self.sentence
