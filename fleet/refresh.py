@@ -2,7 +2,6 @@
 
 from collections.abc import Iterable
 from datetime import datetime
-from functools import partial
 
 from celery import current_app
 from django.conf import settings
@@ -22,7 +21,11 @@ def want_refresh(reservoir_ids: Iterable[int], now: datetime) -> None:
     wanted = sorted(set(reservoir_ids))
     Standing.objects.bulk_create([Standing(reservoir_id=pk) for pk in wanted], ignore_conflicts=True)
     Standing.objects.filter(pk__in=wanted).update(wanted_at=now)
-    transaction.on_commit(partial(_send, wanted[:MESSAGES_AT_ONCE]), robust=True)
+
+    def send() -> None:
+        _send(wanted[:MESSAGES_AT_ONCE])
+
+    transaction.on_commit(send, robust=True)
 
 
 def _send(reservoir_ids: list[int]) -> None:

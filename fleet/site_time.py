@@ -7,15 +7,15 @@ GAP = "That hour did not exist: the clocks were put forward. Give the time after
 
 
 def moment_at(written: datetime, zone: ZoneInfo) -> datetime:
-    """The moment that a clock of the site showed as `written` (no zone of its own). Of a doubled hour, the first.
+    """The moment that a clock of the site showed as `written` (no zone of its own), in UTC. Of a doubled hour, the first.
 
     :raises ValueError: when the clocks skipped it
 
-    >>> moment_at(datetime(2026, 7, 1, 12), ZoneInfo("Europe/Vienna")).astimezone(UTC).hour
+    >>> moment_at(datetime(2026, 7, 1, 12), ZoneInfo("Europe/Vienna")).hour
     10
     """
-    moment = written.replace(tzinfo=zone, fold=0)
-    if moment.astimezone(UTC).astimezone(zone).replace(tzinfo=None, fold=0) != written:
+    moment = written.replace(tzinfo=zone, fold=0).astimezone(UTC)
+    if moment.astimezone(zone).replace(tzinfo=None, fold=0) != written:
         raise ValueError(GAP)
     return moment
 

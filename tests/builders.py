@@ -7,6 +7,9 @@ from typing import Any
 from fleet import catalogue
 from fleet.models import (
     Area,
+    Element,
+    Event,
+    FilterPosition,
     Fluid,
     Limit,
     Machine,
@@ -14,6 +17,7 @@ from fleet.models import (
     OilCharge,
     Person,
     Reservoir,
+    ReservoirAlias,
     Role,
     SamplePoint,
     Site,
@@ -66,6 +70,23 @@ def reservoir(name: str = "drive pack", machine: str = "Press 4", **more: Any) -
     SamplePoint.objects.create(reservoir=made, name="SP-1", place="return line, live valve", is_default=True)
     OilCharge.objects.create(reservoir=made, fluid=oil, started_at=days_ago(1095), volume_l=made.volume_l)
     return made
+
+
+def event(of: Reservoir, kind: str = Event.Kind.TOP_UP, at: datetime = NOON, **more: Any) -> Event:
+    return Event.objects.create(reservoir=of, kind=kind, at=at, **more)
+
+
+def alias(of: Reservoir, name: str = "HYD UNIT 4", **more: Any) -> ReservoirAlias:
+    return ReservoirAlias.objects.create(reservoir=of, name=name, **more)
+
+
+def filter_position(of: Reservoir, name: str = "R1", place: str = FilterPosition.Place.RETURN) -> FilterPosition:
+    return FilterPosition.objects.create(reservoir=of, name=name, place=place, flow_l_min=120.0)
+
+
+def element(at: FilterPosition, fitted_on: date = date(2025, 1, 1), **more: Any) -> Element:
+    facts = {"part": "EL-5", "rating_kind": "beta", "beta": 1000.0, "beta_size_um": 5.0}
+    return Element.objects.create(position=at, fitted_on=fitted_on, **(facts | more))
 
 
 def laboratory(name: str = "Bench counter", **more: Any) -> Laboratory:
