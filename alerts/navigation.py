@@ -11,9 +11,9 @@ from fleet.models import Role, Site
 
 OPEN = Q(areas__reservoirs__alerts__state=Alert.State.OPEN)
 PAGES = [
-    ("board", "Board", ("board",)),
+    ("board", "Board", ("board", "reservoir")),
     ("log", "Log a result", ("log",)),
-    ("samples", "Samples", ("samples", "sample", "upload", "reservoir")),
+    ("samples", "Samples", ("samples", "sample", "upload")),
     ("alerts", "Alerts", ("alerts", "alert", "rules", "deliveries")),
     ("register", "Register", ("register",)),
 ]

@@ -117,7 +117,7 @@ STORAGES = {
     "staticfiles": {
         "BACKEND": "django.contrib.staticfiles.storage.StaticFilesStorage"
         if DEBUG
-        else "whitenoise.storage.CompressedManifestStaticFilesStorage"
+        else "config.static_storage.HashedStaticStorage"
     },
 }
 
@@ -125,6 +125,7 @@ SESSION_COOKIE_SECURE = CSRF_COOKIE_SECURE = not PLAIN_HTTP
 SESSION_COOKIE_HTTPONLY = True
 SECURE_SSL_REDIRECT = not PLAIN_HTTP
 SECURE_PROXY_SSL_HEADER = ("HTTP_X_FORWARDED_PROTO", "https") if env.bool("SILTWATCH_BEHIND_PROXY", False) else None
+SECURE_REDIRECT_EXEMPT = [r"^healthz/$"]
 SECURE_HSTS_SECONDS = 0 if PLAIN_HTTP else env.int("SILTWATCH_HSTS_SECONDS", 31_536_000)
 SECURE_HSTS_INCLUDE_SUBDOMAINS = SECURE_HSTS_PRELOAD = not PLAIN_HTTP
 SECURE_REFERRER_POLICY = "same-origin"

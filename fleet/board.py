@@ -9,7 +9,7 @@ from typing import Any
 from django.db.models import Count, F, Q, QuerySet
 
 from fleet.models import Reservoir, RunwayState, Standing, StandingWord
-from fleet.wording import age_text, headroom_text, runway_text
+from fleet.wording import age_text, headroom_text, runway_aside, runway_text
 
 FORECAST_DAYS = 30
 # The bar spans 4 code steps inside the limit to 3 past it; a quarter of the span counts as one step elsewhere.
@@ -17,11 +17,11 @@ BAR_LEFT, BAR_RIGHT, BAR_WIDTH = -4.0, 3.0, 260.0
 SPARK_WIDTH, SPARK_HEIGHT = 90.0, 20.0
 
 SORTS: dict[str, tuple[Any, ...]] = {
-    "worst": (F("standing__rank").asc(nulls_last=True), F("standing__headroom").asc(nulls_last=True)),
+    "worst": (F("standing__rank").asc(nulls_last=True), F("standing__room").asc(nulls_last=True)),
     "criticality": (F("criticality").asc(), F("standing__rank").asc(nulls_last=True)),
     "reservoir": (F("machine__name").asc(), F("name").asc()),
     "code": (F("standing__code_text").desc(nulls_last=True),),
-    "headroom": (F("standing__headroom").asc(nulls_last=True),),
+    "headroom": (F("standing__room").asc(nulls_last=True),),
     "runway": (F("standing__past_since").asc(nulls_last=True), F("standing__runway_early").asc(nulls_last=True)),
     "age": (F("standing__last_drawn_at").asc(nulls_first=True),),
 }
@@ -51,6 +51,7 @@ class BoardRow:
     spark_end: tuple[float, float] | None
     headroom: str
     runway: str
+    runway_aside: str
     age: str
 
     @property
@@ -60,7 +61,7 @@ class BoardRow:
 
 @dataclass(frozen=True, slots=True)
 class Totals:
-    """How many active reservoirs stand how; `coming` are not past yet and forecast to pass within 30 days."""
+    """How many active reservoirs stand how; `coming` are not past yet and could pass within 30 days."""
 
     all: int
     within: int
@@ -123,6 +124,7 @@ def board_row(reservoir: Reservoir, as_of: datetime) -> BoardRow:
         end,
         headroom_text(standing.headroom, standing.headroom_unit) if standing else "",
         runway_text(standing, as_of) if standing else "",
+        runway_aside(standing) if standing else "",
         age_text(standing.last_drawn_at, as_of) if standing else "no sample",
     )
 
@@ -145,8 +147,8 @@ def totals(reservoirs: QuerySet[Reservoir], as_of: datetime) -> Totals:
 
 
 def coming_soon(soon: datetime) -> Q:
-    """Forecast to pass the limit by then at the median, and not past it yet."""
-    return Q(standing__runway=RunwayState.DATED, standing__runway_median__lte=soon) & ~Q(
+    """A chance of one in ten or more to have passed the limit by then, and not past it yet."""
+    return Q(standing__runway=RunwayState.DATED, standing__runway_early__lte=soon) & ~Q(
         standing__word=StandingWord.PAST_LIMIT
     )
 

@@ -7,6 +7,7 @@ from typing import Protocol
 
 MINUS = "\N{MINUS SIGN}"
 HORIZON_MONTHS = 24
+BEYOND = f"beyond {HORIZON_MONTHS} months"
 LONG_DAYS = 120
 DAYS_A_MONTH = 30.4375
 
@@ -50,15 +51,21 @@ def span_text(days: int) -> str:
 
 
 def runway_text(outlook: HasRunway, as_of: datetime) -> str:
-    """“18 days (9 – 41)”, “beyond 24 months”, “passed 20 days ago” or “cannot say”."""
+    """“18 days (9 – 41)”, “35 days at the earliest”, “beyond 24 months”, “passed 20 days ago” or “cannot say”."""
     if outlook.runway == "past":
         since = outlook.past_since
         return f"passed {span_text(days_between(since, as_of))} ago" if since else "past already"
     if outlook.runway == "beyond_horizon":
-        return f"beyond {HORIZON_MONTHS} months"
+        return BEYOND
     if outlook.runway != "dated":
         return "cannot say"
     return _dated_text(outlook, as_of)
+
+
+def runway_aside(outlook: HasRunway) -> str:
+    """What must be added where only the early end of the range lies within the horizon."""
+    only_early = outlook.runway == "dated" and outlook.runway_median is None
+    return f"more likely {BEYOND}" if only_early else ""
 
 
 def _dated_text(outlook: HasRunway, as_of: datetime) -> str:
@@ -67,11 +74,10 @@ def _dated_text(outlook: HasRunway, as_of: datetime) -> str:
         for moment in (outlook.runway_early, outlook.runway_median, outlook.runway_late)
     )
     if median is None:
-        soonest = f" (soonest {span_text(early)})" if early is not None else ""
-        return f"beyond {HORIZON_MONTHS} months{soonest}"
+        return f"{span_text(early or 0)} at the earliest" if early else "any day at the earliest"
     long = median > LONG_DAYS
     low = _end(early, long) if early is not None else "now"
-    high = _end(late, long) if late is not None else f"beyond {HORIZON_MONTHS} months"
+    high = _end(late, long) if late is not None else BEYOND
     return f"{span_text(median)} ({low} – {high})"
 
 

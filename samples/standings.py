@@ -59,9 +59,14 @@ def is_judged(outlook: Outlook) -> bool:
 
 
 def _badness(one: Computed) -> tuple[int, float]:
+    room = _room(one)
+    return SPEAKS_FIRST.index(StandingWord(one.row.word)), np.inf if room is None else room
+
+
+def _room(one: Computed) -> float | None:
+    """Headroom in code steps; a quarter of the span counts as one for what is not a count."""
     headroom = one.row.headroom
-    steps = headroom if headroom is None or one.measurand.kind == "count" else headroom / PERCENT_A_STEP
-    return SPEAKS_FIRST.index(StandingWord(one.row.word)), np.inf if steps is None else steps
+    return headroom if headroom is None or one.measurand.kind == "count" else headroom / PERCENT_A_STEP
 
 
 def _unjudged_word(history: History, now: datetime) -> StandingWord:
@@ -98,7 +103,7 @@ def _next_due(history: History, last: datetime | None) -> datetime | None:
 def _worst_facts(worst: Computed | None) -> dict[str, Any]:
     if worst is None:
         return {
-            **dict.fromkeys(("worst", "headroom", "value_at", "target_at", "band_low_at", "band_high_at")),
+            **dict.fromkeys(("worst", "headroom", "room", "value_at", "target_at", "band_low_at", "band_high_at")),
             "headroom_unit": "steps",
             "because": "No target and no limit is set.",
             "last_values": [],
@@ -109,6 +114,7 @@ def _worst_facts(worst: Computed | None) -> dict[str, Any]:
         "worst": worst.measurand,
         "because": _because(worst, unit),
         "headroom": row.headroom,
+        "room": _room(worst),
         "headroom_unit": unit,
         "value_at": row.value_at,
         "target_at": row.target_at,

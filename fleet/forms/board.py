@@ -13,7 +13,7 @@ from fleet.models import Area, Fluid, Reservoir, ReservoirClass, StandingWord
 SHOW = [
     ("", "Everything, worst first"),
     *StandingWord.choices,
-    ("coming", f"forecast to pass within {FORECAST_DAYS} days"),
+    ("coming", f"could pass within {FORECAST_DAYS} days"),
     ("overdue", "sample overdue"),
     ("in_doubt", "result in doubt"),
     ("alerted", "open alert"),

@@ -44,6 +44,9 @@ class Standing(models.Model):
     last_drawn_at = models.DateTimeField(null=True)
     next_due_at = models.DateTimeField(null=True)
     headroom = models.FloatField(null=True)
+    room = models.FloatField(
+        null=True, help_text="Headroom in code steps, or in quarters of the span: what sorts the board."
+    )
     headroom_unit = models.CharField(max_length=8, default="steps", help_text="steps (code steps) or % (of the span)")
     value_at = models.FloatField(null=True, help_text="Latest value against the limit at 0; negative is inside.")
     target_at = models.FloatField(null=True)
@@ -78,7 +81,7 @@ class Standing(models.Model):
             ),
         ]
         indexes = [
-            models.Index(fields=["rank", "headroom"]),
+            models.Index(fields=["rank", "room"]),
             models.Index(fields=["wanted_at"], condition=models.Q(wanted_at__isnull=False), name="standing_wanted"),
             models.Index(
                 fields=["reservoir"],

@@ -13,7 +13,7 @@ from django.utils import timezone
 
 from fleet.board import board_row
 from fleet.models import Element, FilterPosition, Measurand, Reservoir
-from fleet.wording import headroom_text, runway_text
+from fleet.wording import headroom_text, runway_aside, runway_text
 from samples.charts import cleanliness_chart, other_charts
 from samples.history import History, read_history
 from samples.lines import code_number, figure_key
@@ -34,6 +34,7 @@ class OutlookLine:
     limit: str
     headroom: str
     runway: str
+    runway_aside: str
     chance: str
     slope: str
 
@@ -94,6 +95,7 @@ def _line(history: History, outlook: Outlook, now: datetime) -> OutlookLine:
         _figure_text(history, outlook, "limit"),
         headroom_text(outlook.headroom, unit),
         runway_text(outlook, now),
+        runway_aside(outlook),
         chance_words(chance) if chance is not None else "",
         slope_text(outlook),
     )

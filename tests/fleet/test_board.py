@@ -17,7 +17,7 @@ RANK = {"past_limit": 0, "over_target": 1, "cannot_tell": 2, "no_current_sample"
 
 def standing(name: str, word: str = "within_target", headroom: float = 2.0, **more: Any) -> Reservoir:
     made = builders.reservoir(name, machine=more.pop("machine", "Press 4"))
-    facts = {"headroom": headroom, "value_at": -headroom, "target_at": -2.0, "limit_text": "20/18/15"}
+    facts = {"headroom": headroom, "room": headroom, "value_at": -headroom, "target_at": -2.0, "limit_text": "20/18/15"}
     Standing.objects.create(reservoir=made, word=word, rank=RANK[word], **(facts | more))
     return made
 
@@ -43,12 +43,12 @@ def test_the_worst_comes_first(reader: Client) -> None:
 def test_the_totals_read_as_a_sentence(reader: Client) -> None:
     soon = timezone.now() + timedelta(days=12)
     standing("fine")
-    standing("coming", "over_target", 0.4, runway="dated", runway_median=soon)
+    standing("coming", "over_target", 0.4, runway="dated", runway_early=soon)
     standing("past", "past_limit", -1.0)
     builders.reservoir("never sampled")
     words = " ".join(reader.get("/").content.decode().replace("</strong></a>", "").split())
     assert "1 of 4 reservoirs hold their target (25 %)" in words
-    assert "1 more is forecast to pass it within 30 days" in words
+    assert "1 more could pass it within 30 days" in words
     assert "1 has no current sample" in words
 
 

@@ -5,7 +5,7 @@ from types import SimpleNamespace
 
 import pytest
 
-from fleet.wording import age_text, headroom_text, runway_text, signed
+from fleet.wording import age_text, headroom_text, runway_aside, runway_text, signed
 from tests.builders import NOON
 
 
@@ -40,7 +40,9 @@ def test_a_long_runway_is_told_in_months() -> None:
 
 
 def test_a_runway_whose_middle_lies_beyond_the_horizon_says_how_soon_it_could_be() -> None:
-    assert runway_text(runway(early=95), NOON) == "beyond 24 months (soonest 95 days)"
+    only_early = runway(early=95)
+    assert runway_text(only_early, NOON) == "95 days at the earliest"
+    assert runway_aside(only_early) == "more likely beyond 24 months"
 
 
 def test_past_beyond_and_refused_are_words() -> None:
