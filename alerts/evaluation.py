@@ -199,6 +199,7 @@ def _columns(case: _Case, finding: Finding) -> dict[str, object]:
         "sentence": sentences.evidence(finding, case.about.zone),
         "sample_id": finding.sample_id,
         "updated_at": case.as_of,
+        "better_since": None,
     }
 
 
@@ -249,7 +250,14 @@ def _close_by_itself(case: _Case, alert: Alert, reason: str, note: str) -> None:
 def _note_recovery(case: _Case, alert: Alert, later: OutlookFacts, away: OutlookFacts) -> None:
     """Better, but not by enough: it stays open and rests on the later sample now."""
     sentence = sentences.recovery_sentence(away, case.about.zone)
-    _write(alert, {"sample_id": later.sample_id, "sentence": sentence, "updated_at": case.as_of})
+    columns: dict[str, object] = {
+        "sample_id": later.sample_id,
+        "headline": sentences.over_headline(away),
+        "sentence": sentence,
+        "better_since": later.drawn_at,
+        "updated_at": case.as_of,
+    }
+    _write(alert, columns)
     tell(alert, case.as_of, sentence)
 
 

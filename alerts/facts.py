@@ -6,6 +6,9 @@ from alerts.models import Alert, Rule
 from alerts.rules import Kind, OpenFacts, OutlookFacts, ReservoirFacts, RuleFacts
 from fleet.models import Measurand, Reservoir, Standing
 from samples.models import Outlook, Sample
+from samples.outlooks import scale_spec
+from samples.trends.headroom import headroom
+from samples.trends.standing import Line
 
 
 def rule_facts(rules: Iterable[Rule]) -> list[RuleFacts]:
@@ -73,6 +76,7 @@ def outlook_facts(row: Outlook) -> OutlookFacts:
         target_source=row.target_source,
         limit_source=row.limit_source,
         headroom=row.headroom,
+        level_headroom=_level_headroom(row),
         runway=row.runway,
         runway_early=row.runway_early,
         runway_median=row.runway_median,
@@ -81,8 +85,15 @@ def outlook_facts(row: Outlook) -> OutlookFacts:
         chance=row.chance_before_next,
         next_planned_at=row.next_planned_at,
         refusal_sentence=row.refusal_sentence,
-        computed_at=row.computed_at,
     )
+
+
+def _level_headroom(row: Outlook) -> float | None:
+    """Headroom of the trend's level, where the row has one."""
+    if row.level is None:
+        return None
+    limit = Line(high=row.limit_high, low=row.limit_low)
+    return headroom(row.level, limit, scale_spec(row.measurand, row.baseline))
 
 
 def open_facts(alert: Alert) -> OpenFacts:
@@ -92,4 +103,5 @@ def open_facts(alert: Alert) -> OpenFacts:
         since=alert.sample.drawn_at if alert.sample else alert.opened_at,
         measurand_key=alert.measurand.key if alert.measurand else "",
         charge_id=alert.charge_id,
+        was_better=alert.better_since is not None,
     )

@@ -63,9 +63,9 @@ class OutlookFacts:
     """One measurand of one reservoir as the outlook has it, worked out from accepted samples only.
 
     `value`, or `low` and `high` of an interval, and `baseline` are in `unit`; target and limit are in `unit` too, or in
-    % change from the baseline where `is_percent`, or in particles per mL where `is_count`. `headroom` is in code steps
-    for a count, else in % of the span between baseline and limit; negative is past. `chance` (0 to 1) is that of the
-    sample planned for `next_planned_at`.
+    % change from the baseline where `is_percent`, or in particles per mL where `is_count`. `headroom` of the latest
+    value and `level_headroom` of the trend are in code steps for a count, else in % of the span between baseline and
+    limit; negative is past. `chance` (0 to 1) is that of the sample planned for `next_planned_at`.
     """
 
     key: str
@@ -92,6 +92,7 @@ class OutlookFacts:
     target_source: str = ""
     limit_source: str = ""
     headroom: float | None = None
+    level_headroom: float | None = None
     runway: str = "cannot_say"
     runway_early: datetime | None = None
     runway_median: datetime | None = None
@@ -100,7 +101,6 @@ class OutlookFacts:
     chance: float | None = None
     next_planned_at: datetime | None = None
     refusal_sentence: str = ""
-    computed_at: datetime | None = None
 
     @property
     def has_target(self) -> bool:
@@ -111,16 +111,16 @@ class OutlookFacts:
         return self.limit_low is not None or self.limit_high is not None
 
     @property
-    def trend_is_past(self) -> bool:
-        """The trend stands past the limit while the latest value does not: one of the two is wrong."""
-        if self.word == "past_limit" or self.runway_median is None or self.computed_at is None:
-            return False
-        return self.runway == "dated" and self.runway_median <= self.computed_at
+    def margin(self) -> float:
+        """What counts as clearly inside, in the units of headroom."""
+        return MARGIN_STEPS if self.is_count else MARGIN_PERCENT
 
     @property
     def is_undecided(self) -> bool:
-        """Within target by its value, past the limit by its trend: the next sample tells which."""
-        return self.word == "within_target" and self.trend_is_past
+        """Within target by its value, but the trend stands clearly nearer to the limit: the next sample tells which."""
+        if self.word != "within_target" or self.headroom is None or self.level_headroom is None:
+            return False
+        return self.headroom - self.level_headroom > self.margin
 
     @property
     def is_current(self) -> bool:
@@ -172,13 +172,17 @@ class Finding:
 
 @dataclass(frozen=True, slots=True)
 class OpenFacts:
-    """An open alert, as far as closing it needs to know. `since` is when its sample was drawn, or when it opened."""
+    """An open alert, as far as closing it needs to know. `since` is when its sample was drawn, or when it opened.
+
+    `was_better`: its sample was within bounds already, but against the trend.
+    """
 
     family: str
     kind: Kind
     since: datetime
     measurand_key: str = ""
     charge_id: int | None = None
+    was_better: bool = False
 
 
 def judge(reservoir: ReservoirFacts, rules: Iterable[RuleFacts], as_of: datetime) -> list[Finding]:
@@ -239,7 +243,7 @@ def later_word(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | No
 
 def still_away(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | None:
     """The measurand of the family that is furthest from being back, or None when all are."""
-    away = [o for o in _judged(alert.family, reservoir) if not is_back(o, alert.kind)]
+    away = [o for o in _judged(alert.family, reservoir) if not is_back(o, alert.kind, alert.was_better)]
     return min(away, key=lambda o: inf if o.headroom is None else o.headroom, default=None)
 
 
@@ -267,16 +271,15 @@ def new_oil_word(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | 
     return next(on_new_oil, None)
 
 
-def is_back(outlook: OutlookFacts, kind: Kind) -> bool:
-    """Whether one measurand is back where an alert of that kind wants it."""
-    if outlook.is_undecided:
+def is_back(outlook: OutlookFacts, kind: Kind, again: bool = False) -> bool:
+    """Whether one measurand is back where an alert of that kind wants it; `again` when the sample before was too."""
+    if outlook.is_undecided and not again:
         return False
     if outlook.word == "within_target" and (outlook.has_target or outlook.headroom is None):
         return True
     if kind is Kind.OVER_TARGET and outlook.has_target:
         return False
-    margin = MARGIN_STEPS if outlook.is_count else MARGIN_PERCENT
-    return outlook.headroom is not None and outlook.headroom >= margin
+    return outlook.headroom is not None and outlook.headroom >= outlook.margin
 
 
 def of_family(outlooks: Iterable[OutlookFacts], family: str) -> list[OutlookFacts]:

@@ -98,17 +98,22 @@ def short_name(outlook: OutlookFacts) -> str:
     return outlook.name.removeprefix("Particles ")
 
 
+def over_headline(outlook: OutlookFacts) -> str:
+    """The value of a measurand about which nothing speaks any more, against the line that it is inside of."""
+    line = "target" if outlook.has_target and outlook.word == "within_target" else "limit"
+    return f"{short_name(outlook)} {value_text(outlook)}, {line_text(outlook, line)}"[:160]
+
+
 def over_sentence(outlook: OutlookFacts, zone: tzinfo) -> str:
     """What closes an alert: the later value and where it stands."""
-    line = "target" if outlook.has_target and outlook.word == "within_target" else "limit"
     drawn = f"The sample drawn {day_text(outlook.drawn_at, zone)}" if outlook.drawn_at else "A later sample"
-    return f"{drawn} shows {short_name(outlook)} {value_text(outlook)}, {line_text(outlook, line)}."
+    return f"{drawn} shows {over_headline(outlook)}."
 
 
 def recovery_sentence(outlook: OutlookFacts, zone: tzinfo) -> str:
     """What keeps an alert open although nothing speaks: better, but not by enough, or against the trend."""
     why = (
-        "Its trend does not follow yet: one more such sample, or the correction on record, will end this."
+        "That is better, but its trend does not follow yet: one more such sample will end this."
         if outlook.is_undecided
         else "That is better, but not far enough inside to call it over."
     )
@@ -143,8 +148,8 @@ def _runway_only(outlook: OutlookFacts, zone: tzinfo) -> str:
         return f"No passing of the limit is in sight within {HORIZON}."
     if outlook.runway != "dated":
         return f"No forecast: {outlook.refusal_sentence or 'too little is known.'}"
-    if outlook.trend_is_past:
-        return "By its trend it is past the limit already, by its latest value it is not; the next sample tells which."
+    if outlook.is_undecided:
+        return "Its trend and its latest value do not agree; the next sample tells which is right."
     early = "now" if outlook.runway_early is None else day_text(outlook.runway_early, zone)
     late = f"beyond {HORIZON}" if outlook.runway_late is None else day_text(outlook.runway_late, zone)
     if outlook.runway_median is None:
@@ -154,7 +159,7 @@ def _runway_only(outlook: OutlookFacts, zone: tzinfo) -> str:
 
 
 def _chance_sentence(outlook: OutlookFacts, zone: tzinfo) -> str:
-    if outlook.chance is None or outlook.word == Kind.PAST_LIMIT or outlook.trend_is_past:
+    if outlook.chance is None or outlook.word == Kind.PAST_LIMIT or outlook.is_undecided:
         return ""
     due = f" on {day_text(outlook.next_planned_at, zone)}" if outlook.next_planned_at else ""
     return f"Chance of passing before the next planned sample{due}: {chance_text(outlook.chance)}."
@@ -168,8 +173,6 @@ def chance_text(chance: float) -> str:
 
 
 def _forecast_words(outlook: OutlookFacts, zone: tzinfo) -> str:
-    if outlook.trend_is_past:
-        return "past it by its trend"
     if outlook.runway == "dated" and outlook.runway_median is not None:
         return f"passes about {day_text(outlook.runway_median, zone)}"
     return f"{chance_text(outlook.chance or 0.0)} chance of passing before the next sample"

@@ -42,6 +42,9 @@ class Alert(models.Model):
     sample = models.ForeignKey(Sample, on_delete=models.SET_NULL, null=True, blank=True, related_name="alerts")
     state = models.CharField(max_length=6, choices=State, default=State.OPEN)
     opened_at = models.DateTimeField()
+    better_since = models.DateTimeField(
+        null=True, blank=True, help_text="Its sample was better, but did not settle it: the next one may."
+    )
     updated_at = models.DateTimeField()
     acknowledged_at = models.DateTimeField(null=True, blank=True)
     acknowledged_by = models.ForeignKey(Person, on_delete=models.SET_NULL, null=True, blank=True, related_name="+")

@@ -44,7 +44,8 @@ def subscriber(of: Reservoir, **more: Any) -> Person:
 
 
 def the_alert(of: Reservoir) -> Alert:
-    return Alert.objects.open().get(reservoir=of)
+    found: Alert = Alert.objects.open().get(reservoir=of)
+    return found
 
 
 def standing(of: Reservoir) -> Standing:

@@ -42,7 +42,7 @@ def test_against_a_trend_that_followed_it_takes_two_samples() -> None:
     scene.arrives(press, days_ago(20), CLEAN)
     alert = scene.the_alert(press)
     assert alert.kind == "past_limit"
-    assert "Its trend does not follow yet" in scene.story(alert)[-1]
+    assert "its trend does not follow yet" in scene.story(alert)[-1]
     scene.arrives(press, days_ago(2), CLEAN)
     assert Alert.objects.get().close_reason == "shown_over"
 
@@ -106,6 +106,7 @@ def test_over_target_is_over_only_within_target() -> None:
     scene.arrives(press, days_ago(40), OVER)
     scene.arrives(press, days_ago(20), OVER)
     assert scene.the_alert(press).is_open
+    press.events.create(kind="element_change", at=days_ago(10))
     scene.arrives(press, days_ago(2), CLEAN)
     assert not Alert.objects.open().exists()
 

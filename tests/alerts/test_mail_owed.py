@@ -1,6 +1,7 @@
 """When an alert owes mail, and to whom."""
 
 from datetime import timedelta
+from typing import Any
 
 import pytest
 
@@ -121,7 +122,7 @@ def test_mail_follows_area_and_kind_of_the_wish() -> None:
     press = scene.reservoir()
     area, site = press.area, press.area.site
     elsewhere = builders.area("Yard", site)
-    wishes = [
+    wishes: list[dict[str, Any]] = [
         *({"area": area}, {"area": elsewhere}, {"kind": "past_limit"}, {"kind": "overdue"}),
         {"area": area, "kind": "past_limit"},
     ]
@@ -141,7 +142,7 @@ def test_two_wishes_of_one_person_make_one_mail() -> None:
 
 
 @pytest.mark.parametrize("who", [{"is_active": False}, {"email": ""}, {"email": "a@b.example\nBcc: x@y.example"}])
-def test_nobody_inactive_or_without_a_usable_address_is_owed_mail(who: dict[str, object]) -> None:
+def test_nobody_inactive_or_without_a_usable_address_is_owed_mail(who: dict[str, Any]) -> None:
     press = scene.reservoir()
     scene.subscriber(press, **who)
     scene.arrives(press, days_ago(2), PAST)

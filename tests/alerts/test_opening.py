@@ -4,6 +4,7 @@ from datetime import timedelta
 
 import pytest
 from django.db import IntegrityError, transaction
+from pytest_django import DjangoAssertNumQueries
 
 from alerts.evaluation import evaluate_changed, evaluate_reservoir
 from alerts.models import Alert, Rule
@@ -89,7 +90,7 @@ def test_evaluating_twice_changes_nothing() -> None:
     assert (alert.story.count(), alert.deliveries.count()) == (1, 1)
 
 
-def test_looking_costs_one_query_when_nothing_changed(django_assert_num_queries) -> None:  # type: ignore[no-untyped-def]
+def test_looking_costs_one_query_when_nothing_changed(django_assert_num_queries: DjangoAssertNumQueries) -> None:
     scene.arrives(scene.reservoir(), days_ago(2), PAST)
     with django_assert_num_queries(1):
         evaluate_changed(NOON)
