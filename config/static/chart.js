@@ -30,5 +30,6 @@
 
   const drawAll = () => document.querySelectorAll("[data-figure]").forEach(draw);
   document.addEventListener("DOMContentLoaded", drawAll);
+  document.addEventListener("htmx:afterSettle", drawAll);
   scheme.addEventListener("change", drawAll);
 })();

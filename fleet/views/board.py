@@ -30,10 +30,12 @@ def board(request: HttpRequest) -> HttpResponse:
     place = form.place()
     shown = ordered(form.narrow(place, as_of), sort.removeprefix("-"), sort.startswith("-"))
     page = Paginator(shown.with_standing(), A_PAGE).get_page(request.GET.get("page"))  # type: ignore[attr-defined]
+    rows = [board_row(reservoir, as_of) for reservoir in page]
     context = {
         "form": form,
+        "pending": any(row.standing and row.standing.wanted_at for row in rows),
         "totals": totals(place, as_of),
-        "rows": [board_row(reservoir, as_of) for reservoir in page],
+        "rows": rows,
         "page": page,
         "columns": _columns(request, sort),
         "here": _address(request),
