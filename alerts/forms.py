@@ -96,6 +96,8 @@ class RuleForm(forms.ModelForm[Rule]):
         for name in ("within_days", "least_chance", "grace_days"):
             if name not in known:
                 del self.fields[name]
+        for name in ("least_criticality", *known):
+            self.fields[name].widget.attrs["class"] = "short"
 
     def clean(self) -> dict[str, Any]:
         cleaned = super().clean() or self.cleaned_data

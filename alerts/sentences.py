@@ -37,13 +37,6 @@ def value_text(outlook: OutlookFacts) -> str:
     return text if change is None else f"{text} ({_signed(change)} % of new)"
 
 
-def full_value_text(outlook: OutlookFacts) -> str:
-    """The latest value for evidence; a count with the particles that were counted."""
-    if outlook.is_count and outlook.value is not None:
-        return f"{value_text(outlook)}, {_significant(outlook.value)} per mL"
-    return value_text(outlook)
-
-
 def percent_change(outlook: OutlookFacts) -> float | None:
     """Change of the value against the new oil, %, where that is how its limits are written."""
     if not outlook.is_percent or outlook.value is None or not outlook.baseline:
@@ -65,7 +58,7 @@ def headline(finding: Finding, zone: tzinfo) -> str:
     """≥14 µm(c) code 17, limit 15. At most 160 characters."""
     outlook = finding.speaker
     if outlook is None:
-        due = f"sample due {day_text(finding.due_at, zone)}" if finding.due_at else "planned sample"
+        due = f"Sample due {day_text(finding.due_at, zone)}" if finding.due_at else "The planned sample"
         return f"{due} has not come"
     text = f"{short_name(outlook)} {value_text(outlook)}, {line_text(outlook, CERTAIN_LINE[finding.kind])}"
     return (text if finding.kind is not Kind.FORECAST else f"{text}, {_forecast_words(outlook, zone)}")[:160]
@@ -121,20 +114,24 @@ def recovery_sentence(outlook: OutlookFacts, zone: tzinfo) -> str:
 
 
 def _measured(outlook: OutlookFacts, kind: Kind, zone: tzinfo) -> str:
+    """What the headline leaves out: the day, the particles counted, whose figure the line is, and how far past it."""
     line = CERTAIN_LINE[kind]
-    drawn = f"Drawn {day_text(outlook.drawn_at, zone)}: " if outlook.drawn_at else ""
     source = outlook.limit_source if line == "limit" else outlook.target_source
-    by = f" ({source})" if source else ""
-    passed = f", passed by {distance_text(outlook)}" if kind is Kind.PAST_LIMIT and _is_past(outlook) else ""
-    return f"{drawn}{short_name(outlook)} {full_value_text(outlook)}; {line_text(outlook, line)}{by}{passed}."
+    facts = [
+        f"Drawn {day_text(outlook.drawn_at, zone)}" if outlook.drawn_at else "",
+        f"{_significant(outlook.value)} per mL" if outlook.is_count and outlook.value is not None else "",
+        f"past its limit by {distance_text(outlook)}" if kind is Kind.PAST_LIMIT and _is_past(outlook) else "",
+        f"{line} from: {source}" if source else "",
+    ]
+    return f"{'; '.join(fact for fact in facts if fact)}."
 
 
 def distance_text(outlook: OutlookFacts) -> str:
-    """How far the value is from its limit, without a sign: 1.7 code steps; 24 % of the span to the limit."""
+    """How far the value is from its limit, without a sign: 1.7 code steps; 24 % of the span from new oil to limit."""
     steps = abs(outlook.headroom or 0.0)
     if outlook.is_count:
         return f"{steps:.1f} code step" if f"{steps:.1f}" == "1.0" else f"{steps:.1f} code steps"
-    return f"{steps:.0f} % of the span to it"
+    return f"{steps:.0f} % of the span"
 
 
 def _is_past(outlook: OutlookFacts) -> bool:
@@ -173,9 +170,11 @@ def chance_text(chance: float) -> str:
 
 
 def _forecast_words(outlook: OutlookFacts, zone: tzinfo) -> str:
-    if outlook.runway == "dated" and outlook.runway_median is not None:
-        return f"passes about {day_text(outlook.runway_median, zone)}"
-    return f"{chance_text(outlook.chance or 0.0)} chance of passing before the next sample"
+    median, due = outlook.runway_median, outlook.next_planned_at
+    if median is not None and (outlook.chance is None or due is None or median <= due):
+        return f"passes it about {day_text(median, zone)}"
+    by = f"by {day_text(due, zone)}" if due else "before the next sample"
+    return f"{chance_text(outlook.chance or 0.0)} chance of passing it {by}"
 
 
 def _companions(companions: Sequence[Speaker]) -> str:

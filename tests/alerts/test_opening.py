@@ -24,7 +24,9 @@ def test_a_sample_past_the_limit_opens_one_alert_that_says_what_and_against_what
     assert (alert.family, alert.kind, alert.sample_id, alert.charge) == ("dirt", "past_limit", sample.pk, sample.charge)
     # 600 per mL lies in 320 … 640: scale number 16 (ISO 4406:2021, table 1)
     assert alert.headline == "≥14 µm(c) code 16, limit 14"
-    assert "Drawn 30 May 2026: ≥14 µm(c) code 16, 600 per mL; limit 14 (test: plant decision)" in alert.sentence
+    assert alert.sentence == (
+        "Drawn 30 May 2026; 600 per mL; past its limit by 1.9 code steps; limit from: test: plant decision."
+    )
     assert alert.measurand is not None
     assert alert.measurand.key == "p14"
 
@@ -157,4 +159,4 @@ def test_an_overdue_sample_opens_an_alert_after_a_tenth_of_the_interval() -> Non
     scene.judged(press, NOON + timedelta(days=4.5))
     alert = scene.the_alert(press)
     assert (alert.family, alert.kind, alert.charge) == ("sampling", "overdue", None)
-    assert alert.headline == "sample due 30 May 2026 has not come"
+    assert alert.headline == "Sample due 30 May 2026 has not come"
