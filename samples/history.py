@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+from bisect import bisect_right
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date, datetime
 from functools import cached_property
 
@@ -65,6 +66,11 @@ class History:
             for result in _results(sample):
                 if result.measurand.key == key:
                     yield Reported(sample, result)
+
+    def including(self, sample: Sample) -> History:
+        """This history with one more sample in its place; it needs `current_results`."""
+        place = bisect_right(self.samples, sample.drawn_at, key=lambda one: one.drawn_at)
+        return replace(self, samples=[*self.samples[:place], sample, *self.samples[place:]])
 
     def charge_at(self, moment: datetime) -> OilCharge | None:
         return next(

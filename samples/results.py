@@ -2,14 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import asdict, dataclass
 from datetime import datetime
 
 from django.db import IntegrityError, transaction
 
 from fleet.codes import IsoCode
-from fleet.models import Event, Measurand, Person, Reservoir, SamplePoint
+from fleet.models import Event, Measurand, OilCharge, Person, Reservoir, SamplePoint
 from fleet.refresh import want_refresh
 from samples.checks.battery import hard_errors, run_checks
 from samples.checks.candidates import CandidateSample, Doubt, PastEvent, PastSample
@@ -72,23 +72,44 @@ class SampleEntry:
 
 @dataclass(frozen=True)
 class Preview:
-    """What the page shows before anything is saved. `errors` refuse the sample, `doubts` only ask."""
+    """What a page shows before anything is saved. `errors` refuse the sample, `doubts` only ask.
 
+    `results` are the readings as rows that are not saved and belong to no sample yet; `previous` is the last accepted
+    sample of the same point and oil charge.
+    """
+
+    results: list[Result]
     code: IsoCode | None
+    charge: OilCharge | None
     previous: Sample | None
     previous_code: IsoCode | None
-    errors: list[Doubt]
+    errors: list[EntryError]
     doubts: list[Doubt]
 
 
-def preview(entry: SampleEntry, history: History, now: datetime) -> Preview:
-    """Run every check without saving. `history` is the reservoir's, read once by the caller."""
+@dataclass(frozen=True)
+class Checked:
+    """An entry with what the checks said of it; without errors it can be saved."""
+
+    entry: SampleEntry
+    preview: Preview
+
+
+def measurands_by_key() -> dict[str, Measurand]:
+    return {measurand.key: measurand for measurand in Measurand.objects.all()}
+
+
+def preview(entry: SampleEntry, history: History, now: datetime, known: Mapping[str, Measurand]) -> Preview:
+    """Run every check without saving. `history` is the reservoir's and `known` all measurands, read by the caller."""
     candidate = _candidate(entry)
     past = [sample for sample in _comparable(entry, history) if sample.drawn_at < entry.facts.drawn_at]
-    errors = hard_errors(candidate, now)
+    results = unsaved_results(entry.readings, known)
+    errors = [_told(error) for error in hard_errors(candidate, now)] + _impossible(results)
     previous = past[-1] if past else None
     return Preview(
-        code=entry_code(entry),
+        results=results,
+        code=code_of(results) or entry.stated_code,
+        charge=history.charge_at(entry.facts.drawn_at),
         previous=previous,
         previous_code=code_of(previous.current_results) if previous else None,
         errors=errors,
@@ -96,35 +117,41 @@ def preview(entry: SampleEntry, history: History, now: datetime) -> Preview:
     )
 
 
-def entry_code(entry: SampleEntry) -> IsoCode | None:
-    """The code of the counts; without counts, the code as stated."""
-    return code_of(unsaved_results(entry)) or entry.stated_code
+def unsaved_results(readings: Iterable[Reading], known: Mapping[str, Measurand]) -> list[Result]:
+    """Readings as rows that are not saved and belong to no sample yet."""
+    return [_result(reading, known[reading.measurand]) for reading in readings]
 
 
-def unsaved_results(entry: SampleEntry) -> list[Result]:
-    """The readings as Result rows that are not saved and belong to no sample yet."""
-    known = {measurand.key: measurand for measurand in Measurand.objects.all()}
-    return [_result(reading, known[reading.measurand]) for reading in entry.readings]
-
-
-def save_entry(
-    entry: SampleEntry, history: History, *, by: Person | None, now: datetime, intake: IntakeFile | None = None
-) -> Sample:
+def save_entry(entry: SampleEntry, history: History, *, by: Person | None, now: datetime) -> Sample:
     """Save one sample with its results and doubts in one transaction, and ask for a fresh outlook.
 
     Raises EntryError where the sample cannot be true or is on record already; then nothing is saved.
     """
     if not entry.readings:
         raise EntryError("no_result", "paste", "There is no result yet. Give a code, counts or at least one figure.")
-    found = preview(entry, history, now)
+    found = preview(entry, history, now, measurands_by_key())
     if found.errors:
-        first = found.errors[0]
-        raise EntryError(first.code, _field_of(first.code), f"{first.sentence} {first.settles}".strip())
+        raise found.errors[0]
+    return save_checked([Checked(entry, found)], by=by, now=now)[0]
+
+
+def save_checked(
+    checked: Sequence[Checked], *, by: Person | None, now: datetime, intake: IntakeFile | None = None
+) -> list[Sample]:
+    """Save samples that passed the checks, all or none, and ask once for fresh outlooks of their reservoirs.
+
+    Raises EntryError where one is on record already; then nothing is saved.
+    """
+    samples = [as_sample(one, by, now, intake) for one in checked]
     try:
         with transaction.atomic():
-            return _write(entry, found.doubts, by, now, intake)
+            Sample.objects.bulk_create(samples)
+            Result.objects.bulk_create(_result_rows(checked, samples))
+            DoubtRow.objects.bulk_create(_doubt_rows(checked, samples))
+            want_refresh({sample.reservoir_id for sample in samples}, now)
     except IntegrityError as error:
         raise _refused(error) from error
+    return samples
 
 
 def accept(sample: Sample, by: Person, reason: str, now: datetime) -> None:
@@ -146,36 +173,46 @@ def _judge(sample: Sample, verdict: Sample.Verdict, by: Person, reason: str, now
     want_refresh([sample.reservoir_id], now)
 
 
-def _write(
-    entry: SampleEntry, doubts: Sequence[Doubt], by: Person | None, now: datetime, intake: IntakeFile | None
-) -> Sample:
-    sample = Sample.objects.create(
+def as_sample(checked: Checked, by: Person | None, now: datetime, intake: IntakeFile | None = None) -> Sample:
+    """The sample that saving would make, not saved, with its `current_results`."""
+    entry = checked.entry
+    sample = Sample(
         reservoir=entry.reservoir,
         point=entry.point,
-        charge=entry.reservoir.charge_on(entry.facts.drawn_at),
+        charge=checked.preview.charge,
         laboratory=entry.laboratory,
         entered_at=now,
         entered_by=by,
         intake=intake,
-        verdict=Sample.Verdict.IN_DOUBT if doubts else Sample.Verdict.ACCEPTED,
+        verdict=Sample.Verdict.IN_DOUBT if checked.preview.doubts else Sample.Verdict.ACCEPTED,
         **asdict(entry.facts),
     )
-    results = unsaved_results(entry)
-    for result in results:
-        result.sample, result.entered_at, result.entered_by = sample, now, by
-    Result.objects.bulk_create(results)
-    DoubtRow.objects.bulk_create(
-        [DoubtRow(sample=sample, code=doubt.code, sentence=doubt.sentence, settles=doubt.settles) for doubt in doubts]
-    )
-    want_refresh([entry.reservoir.pk], now)
+    sample.current_results = checked.preview.results
     return sample
+
+
+def _result_rows(checked: Sequence[Checked], samples: Sequence[Sample]) -> list[Result]:
+    rows = []
+    for one, sample in zip(checked, samples, strict=True):
+        for result in one.preview.results:
+            result.sample, result.entered_at, result.entered_by = sample, sample.entered_at, sample.entered_by
+            rows.append(result)
+    return rows
+
+
+def _doubt_rows(checked: Sequence[Checked], samples: Sequence[Sample]) -> list[DoubtRow]:
+    return [
+        DoubtRow(sample=sample, code=doubt.code, sentence=doubt.sentence[:300], settles=doubt.settles[:300])
+        for one, sample in zip(checked, samples, strict=True)
+        for doubt in dict.fromkeys(one.preview.doubts)
+    ]
 
 
 def _result(reading: Reading, measurand: Measurand) -> Result:
     return Result(
         measurand=measurand,
-        reported_text=reading.reported_text,
-        reported_unit=reading.reported_unit,
+        reported_text=reading.reported_text[:60],
+        reported_unit=reading.reported_unit[:24],
         qualifier=reading.qualifier,
         value=reading.value,
         low=reading.low,
@@ -203,6 +240,13 @@ def _comparable(entry: SampleEntry, history: History) -> list[Sample]:
     return [s for s in history.accepted if s.point_id == entry.point.pk and s.charge_id == charge_id]
 
 
+def _last_ones(entry: SampleEntry, history: History) -> list[Sample]:
+    """The last comparable sample before this one, and the last with a meter reading: the checks look no further."""
+    past = [sample for sample in _comparable(entry, history) if sample.drawn_at < entry.facts.drawn_at]
+    metered = [sample for sample in past if sample.machine_hours is not None]
+    return [*metered[-1:], *past[-1:]]
+
+
 def _doubts(entry: SampleEntry, candidate: CandidateSample, history: History) -> list[Doubt]:
     charge = history.charge_at(entry.facts.drawn_at)
     bottle = Bottle(
@@ -214,7 +258,7 @@ def _doubts(entry: SampleEntry, candidate: CandidateSample, history: History) ->
     first = history.charges[0].started_at if history.charges else None
     return run_checks(
         candidate,
-        [_past(sample) for sample in _comparable(entry, history)],
+        [_past(sample) for sample in _last_ones(entry, history)],
         events=[_event(event) for event in history.events],
         expectations=expectations(history, bottle, entry.readings),
         charge_began=charge.started_at if charge else first,
@@ -230,8 +274,33 @@ def _event(event: Event) -> PastEvent:
     return PastEvent(event.ended_at or event.at, event.get_kind_display(), event.kind in CLEANING)
 
 
-def _field_of(code: str) -> str:
-    return "drawn_at" if code == "drawn_in_future" else "counts"
+def _told(error: Doubt) -> EntryError:
+    field = "drawn_at" if error.code == "drawn_in_future" else "counts"
+    return EntryError(error.code, field, f"{error.sentence} {error.settles}".strip())
+
+
+def _impossible(results: Sequence[Result]) -> list[EntryError]:
+    """Figures outside what the measurand can be at all."""
+    return [
+        EntryError("value_impossible", result.measurand.key, _impossible_sentence(result))
+        for result in results
+        if _is_impossible(result)
+    ]
+
+
+def _is_impossible(result: Result) -> bool:
+    lowest, highest = result.measurand.sensible_low, result.measurand.sensible_high
+    least = result.value if result.value is not None else result.low
+    most = result.value if result.value is not None else result.high
+    too_high = highest is not None and least is not None and least > highest
+    return too_high or (lowest is not None and most is not None and most < lowest)
+
+
+def _impossible_sentence(result: Result) -> str:
+    known = result.measurand
+    possible = f"{known.sensible_low or 0:,.4g} to {known.sensible_high or 0:,.4g} {known.unit}"
+    said = f"{result.reported_text} {result.reported_unit}"
+    return f"{known.name}: {said} cannot be ({possible} can). Check the figure and its unit."
 
 
 def _refused(error: IntegrityError) -> EntryError:
