@@ -60,7 +60,7 @@ class LogForm(forms.Form):
     p6 = NumberField(label="≥6 µm(c)")
     p14 = NumberField(label="≥14 µm(c)")
     basis = forms.ChoiceField(choices=BASES, required=False, label="Counts are")
-    counted_ml = AmountField(label="Volume counted", least=0.001, most=10_000, unit="mL")
+    counted_ml = AmountField(label="Counted, mL", least=0.001, most=10_000, unit="mL")
     microscope = forms.BooleanField(label="5 and 15 µm under the microscope", required=False)
     water = NumberField(label="Water")
     water_unit = forms.ChoiceField(choices=WATER_UNITS, required=False, initial="mg/kg", label="Unit of water")
