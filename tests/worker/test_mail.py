@@ -38,6 +38,13 @@ def make_due_now() -> None:
     Delivery.objects.filter(state="queued").update(due_at=timezone.now())
 
 
+def two_sweeps_go_by(worker: Worker) -> None:
+    """Not `wait_idle`: what a killed worker had not acknowledged stays with the broker for a while."""
+    done = "Task alerts.tasks.send_due["
+    before = worker.output().count(done)
+    worker.wait_until(lambda: worker.output().count(done) >= before + 2)
+
+
 @pytest.fixture
 def sink(worker: Worker, smtp_sink: SmtpSink) -> Iterator[SmtpSink]:
     yield smtp_sink
@@ -49,7 +56,7 @@ def test_a_judgement_is_mailed_once_and_within_seconds(worker: Worker, sink: Smt
     worker.wait_until(sent, timeout=5)
     worker.wait_idle()
     (mail,) = sink.messages
-    assert mail.message["Subject"].startswith("Past limit · Press 4 drive pack")
+    assert "Past limit · Press 4 drive pack" in mail.message["Subject"]
     assert "code 16" in mail.body()
     assert "code 16" in mail.body("html")
 
@@ -77,7 +84,7 @@ def test_killed_during_a_send_it_is_sent_once_after_the_restart(
     sink.release()
     worker.start()
     worker.wait_until(sent, timeout=30)
-    worker.wait_idle()
+    two_sweeps_go_by(worker)
     assert Delivery.objects.get().attempts == 2
     assert len(sink.messages) == 1
 
