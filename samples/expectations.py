@@ -11,11 +11,12 @@ import numpy as np
 from samples.checks.candidates import Expectation
 from samples.history import History, Reported
 from samples.lines import figure_key, line_of
-from samples.outlooks import day_of, event_marks, filter_results, parameters_for, scale_spec
+from samples.outlooks import day_of, event_marks, filter_together, parameters_for, scale_spec
 from samples.readings import Reading
 from samples.trends.arrays import DAYS_PER_MONTH
 from samples.trends.forecast import forecast_at
-from samples.trends.scales import to_scale
+from samples.trends.level import LevelParameters
+from samples.trends.scales import ScaleSpec, to_scale
 from samples.trends.stretch import Family, split
 
 FEWEST_EARLIER = 3
@@ -31,17 +32,27 @@ class Bottle:
     laboratory_id: int | None
 
 
+@dataclass(frozen=True, slots=True)
+class _Follow:
+    """One figure of the new sample with the earlier results it is held against."""
+
+    reading: Reading
+    earlier: Sequence[Reported]
+    spec: ScaleSpec
+    parameters: LevelParameters
+
+
 def expectations(history: History, bottle: Bottle, readings: Iterable[Reading]) -> list[Expectation]:
     """One for each figure that has at least three earlier samples in its own stretch; bounds and codes have none."""
     known = {measurand.key: measurand for measurand in history.measurands}
-    found = []
+    followed = []
     for reading in readings:
         if reading.value is None or reading.measurand not in known:
             continue
         earlier = _same_stretch(history, bottle, reading, known[reading.measurand].family)
         if len(earlier) >= FEWEST_EARLIER:
-            found.append(_expectation(history, bottle, reading, earlier))
-    return found
+            followed.append(_follow(history, bottle, reading, earlier))
+    return _expected(followed, bottle) if followed else []
 
 
 def _same_stretch(history: History, bottle: Bottle, reading: Reading, family: str) -> list[Reported]:
@@ -55,19 +66,33 @@ def _same_stretch(history: History, bottle: Bottle, reading: Reading, family: st
     return [series[position] for position in mine.positions if position < len(series)]
 
 
-def _expectation(history: History, bottle: Bottle, reading: Reading, earlier: Sequence[Reported]) -> Expectation:
+def _follow(history: History, bottle: Bottle, reading: Reading, earlier: Sequence[Reported]) -> _Follow:
     measurand = earlier[-1].result.measurand
     charge = history.charge_at(bottle.drawn_at)
     spec = scale_spec(measurand, charge.fluid.baseline(measurand.key) if charge else None)
     limit = line_of(history.limit_at(figure_key(measurand.key), bottle.drawn_at), measurand.key, spec)
-    parameters = parameters_for(measurand, spec, limit).parameters
-    state = filter_results(earlier, spec, parameters).state
-    months = (day_of(bottle.drawn_at) - day_of(earlier[-1].drawn_at)) / DAYS_PER_MONTH
-    law = forecast_at(state, months, parameters, sample=True)
-    return Expectation(
-        measurand=measurand.key,
-        label=measurand.name,
-        observed=float(to_scale(reading.value, spec)) if reading.value is not None else np.nan,
-        mean=float(law.mean[0]),
-        scale=float(np.sqrt(law.variance[0])),
+    return _Follow(reading, earlier, spec, parameters_for(measurand, spec, limit).parameters)
+
+
+def _expected(followed: Sequence[_Follow], bottle: Bottle) -> list[Expectation]:
+    """All figures of the sample through the trend filter at once, one series each."""
+    given = [one.parameters for one in followed]
+    parameters = LevelParameters(
+        q=np.array([each.q for each in given]),
+        r=np.array([each.r for each in given]),
+        tau=np.array([each.tau for each in given]),
+        c=given[0].c,
     )
+    state = filter_together([(one.earlier, one.spec) for one in followed], parameters)
+    last = np.array([day_of(one.earlier[-1].drawn_at) for one in followed])
+    law = forecast_at(state, (day_of(bottle.drawn_at) - last) / DAYS_PER_MONTH, parameters, sample=True)
+    return [
+        Expectation(
+            measurand=one.reading.measurand,
+            label=one.earlier[-1].result.measurand.name,
+            observed=float(to_scale(np.nan if one.reading.value is None else one.reading.value, one.spec)),
+            mean=float(law.mean[row]),
+            scale=float(np.sqrt(law.variance[row])),
+        )
+        for row, one in enumerate(followed)
+    ]

@@ -58,14 +58,17 @@ class History:
 
     def reported(self, key: str, accepted_only: bool = True) -> list[Reported]:
         """Every current result of one measurand, oldest first."""
-        samples = self.accepted if accepted_only else self.samples
-        return list(self._reported(key, samples))
+        if accepted_only:
+            return list(self._accepted_by_key.get(key, []))
+        return [r for sample in self.samples for r in _reported(sample) if r.result.measurand.key == key]
 
-    def _reported(self, key: str, samples: list[Sample]) -> Iterator[Reported]:
-        for sample in samples:
-            for result in _results(sample):
-                if result.measurand.key == key:
-                    yield Reported(sample, result)
+    @cached_property
+    def _accepted_by_key(self) -> dict[str, list[Reported]]:
+        by_key: dict[str, list[Reported]] = {}
+        for sample in self.accepted:
+            for reported in _reported(sample):
+                by_key.setdefault(reported.result.measurand.key, []).append(reported)
+        return by_key
 
     def including(self, sample: Sample) -> History:
         """This history with one more sample in its place; it needs `current_results`."""
@@ -113,6 +116,10 @@ def read_history(reservoir: Reservoir) -> History:
         targets=list(Target.objects.for_reservoir(reservoir, fluids)),
         limits=list(Limit.objects.for_reservoir(reservoir, fluids)),
     )
+
+
+def _reported(sample: Sample) -> Iterator[Reported]:
+    return (Reported(sample, result) for result in _results(sample))
 
 
 def _results(sample: Sample) -> list[Result]:

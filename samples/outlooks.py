@@ -136,6 +136,18 @@ def filter_results(series: Sequence[Reported], spec: ScaleSpec, parameters: Leve
     return run_filter(given.days / DAYS_PER_MONTH, observed.y, parameters, None, observed.extra_variance)
 
 
+def filter_together(many: Sequence[tuple[Sequence[Reported], ScaleSpec]], parameters: LevelParameters) -> LevelState:
+    """As `filter_results` for many series at once, with one array entry of parameters each."""
+    shape = (len(many), max(len(series) for series, _ in many))
+    days, y, extra = np.full(shape, np.nan), np.full(shape, np.nan), np.zeros(shape)
+    for row, (series, spec) in enumerate(many):
+        given = _results(series)
+        observed = observe(given.values, given.lows, given.highs, given.qualifiers, spec)
+        upto = len(series)
+        days[row, :upto], y[row, :upto], extra[row, :upto] = given.days, observed.y, observed.extra_variance
+    return run_filter(days / DAYS_PER_MONTH, y, parameters, None, extra).state
+
+
 def state_of(outlook: Outlook) -> LevelState:
     """The filter's state as it was kept, at its own moment nought."""
     kept = (outlook.level, outlook.drift, outlook.p_level, outlook.p_cross, outlook.p_drift, 0.0)
