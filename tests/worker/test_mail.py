@@ -7,7 +7,7 @@ import pytest
 from django.utils import timezone
 
 from alerts.models import Delivery
-from samples.outlooks import refresh_outlook
+from samples.tasks import refresh_outlook
 from tests import builders
 from tests.alerts import scene
 from tests.alerts.scene import PAST
@@ -18,15 +18,12 @@ pytestmark = pytest.mark.worker
 
 
 def a_sample_past_the_limit_is_judged() -> None:
-    """The row is written as a refresh writes it, and the worker is told as a refresh tells it."""
-    from alerts.tasks import evaluate_changed
-
+    """The worker refreshes the outlook, and that asks it to evaluate."""
     press = scene.reservoir()
     scene.subscriber(press)
     now = timezone.now()
     builders.sample(press, now - timedelta(days=1), PAST)
-    refresh_outlook(press.pk, now)
-    evaluate_changed.delay()
+    refresh_outlook.delay(press.pk)
 
 
 def sent() -> bool:
