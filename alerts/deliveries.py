@@ -8,9 +8,8 @@ time; a claim whose worker died is freed by the sweep.
 
 import logging
 import smtplib
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from datetime import datetime, timedelta
-from functools import partial
 from typing import Final
 
 from celery import current_app
@@ -67,9 +66,18 @@ def owe(alert: Alert, reason: str, now: datetime) -> list[Person]:
 
 
 def enqueue(delivery_ids: Iterable[int]) -> None:
-    """Ask a worker to send, after commit. A lost message does no harm: the sweep finds the row."""
+    """Ask a worker to send, after commit. A message that is lost, or a broker that is down, does no harm: the sweep
+    finds the row."""
     for delivery_id in delivery_ids:
-        transaction.on_commit(partial(current_app.send_task, SEND_TASK, args=[delivery_id]), robust=True)
+        transaction.on_commit(_request_to_send(delivery_id), robust=True)
+
+
+def _request_to_send(delivery_id: int) -> Callable[[], None]:
+    # A function of its own, not a partial: Django names what failed by its __qualname__.
+    def ask_to_send() -> None:
+        current_app.send_task(SEND_TASK, args=[delivery_id])
+
+    return ask_to_send
 
 
 def claim(delivery_id: int, now: datetime) -> bool:

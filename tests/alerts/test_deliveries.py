@@ -2,13 +2,14 @@
 
 from concurrent.futures import ThreadPoolExecutor
 from datetime import timedelta
-from functools import partial
 from threading import Barrier
-from typing import cast
 
 import pytest
+from celery import current_app
 from django.db import IntegrityError, connection, transaction
+from kombu.exceptions import OperationalError
 from pytest_django import DjangoCaptureOnCommitCallbacks, Settings
+from redis import Redis
 
 from alerts import deliveries
 from alerts.models import Alert, Delivery
@@ -102,13 +103,14 @@ def test_a_claim_that_was_freed_cannot_be_marked_by_its_first_owner(delivery: De
     assert delivery.state == "queued"
 
 
-def test_the_sweep_enqueues_what_is_due_after_commit(
-    delivery: Delivery, django_capture_on_commit_callbacks: DjangoCaptureOnCommitCallbacks
+def test_the_sweep_asks_the_worker_after_commit(
+    delivery: Delivery, broker: Redis, django_capture_on_commit_callbacks: DjangoCaptureOnCommitCallbacks
 ) -> None:
-    with django_capture_on_commit_callbacks() as callbacks:
+    with django_capture_on_commit_callbacks(execute=True):
         assert deliveries.send_due(NOON) == 1
-    (callback,) = (cast("partial[object]", one) for one in callbacks)
-    assert (callback.args, callback.keywords) == (("alerts.tasks.send_delivery",), {"args": [delivery.pk]})
+        assert broker.llen("celery") == 0
+    assert broker.llen("celery") == 1
+    assert b"alerts.tasks.send_delivery" in broker.lrange("celery", 0, 0)[0]
 
 
 def test_nobody_who_has_left_gets_it(delivery: Delivery, smtp_sink: SmtpSink) -> None:
@@ -136,6 +138,18 @@ def owed_for_real(transactional_db: None, django_db_serialized_rollback: None) -
         opened_at=NOON, updated_at=NOON,
     )  # fmt: skip
     return Delivery.objects.create(alert=alert, person=person, reason="past_limit", address=person.email, due_at=NOON)
+
+
+@pytest.mark.django_db(transaction=True)
+def test_a_broker_that_is_down_does_no_harm(owed_for_real: Delivery, monkeypatch: pytest.MonkeyPatch) -> None:
+    def refused(*_: object, **__: object) -> None:
+        raise OperationalError("no broker")
+
+    monkeypatch.setattr(current_app, "send_task", refused)
+    with transaction.atomic():
+        assert deliveries.send_due(NOON) == 1
+    owed_for_real.refresh_from_db()
+    assert owed_for_real.state == "queued"
 
 
 @pytest.mark.django_db(transaction=True)
