@@ -10,7 +10,7 @@ from typing import Any, Literal
 
 import numpy as np
 
-from fleet.models import Limit, Measurand, Target
+from fleet.models import Limit, Measurand, RunwayState, Target
 from samples.coding.iso4406 import code_scale
 from samples.figures import ChartPlan, Dot, FanArea, Line, Mark, Step, figure
 from samples.history import History, Reported
@@ -179,7 +179,7 @@ def _day_start(history: History, found: Target | Limit) -> datetime:
 
 def _fan(history: History, outlook: Outlook | None, spec: ScaleSpec, now: datetime, *, on_y: bool) -> FanArea | None:
     """The forecast from the latest sample on, from the state kept in the outlook; None where it is refused."""
-    if outlook is None or outlook.sample is None or outlook.level is None or outlook.refusal not in {"", "no_limit"}:
+    if outlook is None or outlook.sample is None or outlook.level is None or not _has_forecast(outlook):
         return None
     state = state_of(outlook)
     limit = standing.Line(high=outlook.limit_high, low=outlook.limit_low)
@@ -190,6 +190,11 @@ def _fan(history: History, outlook: Outlook | None, spec: ScaleSpec, now: dateti
     at = [_local(history, start + timedelta(days=float(months) * DAYS_PER_MONTH)) for months in drawn.months]
     rows = (row if on_y else from_scale(row, spec) for row in (drawn.median, drawn.low, drawn.high))
     return FanArea(at, *(np.round(row, 4).tolist() for row in rows))
+
+
+def _has_forecast(outlook: Outlook) -> bool:
+    """Not where it was refused, and not past the limit: that gets a date since when."""
+    return outlook.refusal in {"", "no_limit"} and outlook.runway != RunwayState.PAST
 
 
 def _local(history: History, moment: datetime) -> datetime:

@@ -44,24 +44,25 @@ class _Follow:
 
 def expectations(history: History, bottle: Bottle, readings: Iterable[Reading]) -> list[Expectation]:
     """One for each figure that has at least three earlier samples in its own stretch; bounds and codes have none."""
-    known = {measurand.key: measurand for measurand in history.measurands}
     followed = []
     for reading in readings:
-        if reading.value is None or reading.measurand not in known:
+        series = [r for r in history.reported(reading.measurand) if r.drawn_at < bottle.drawn_at]
+        if reading.value is None or len(series) < FEWEST_EARLIER:
             continue
-        earlier = _same_stretch(history, bottle, reading, known[reading.measurand].family)
+        earlier = _same_stretch(history, bottle, reading, series)
         if len(earlier) >= FEWEST_EARLIER:
             followed.append(_follow(history, bottle, reading, earlier))
     return _expected(followed, bottle) if followed else []
 
 
-def _same_stretch(history: History, bottle: Bottle, reading: Reading, family: str) -> list[Reported]:
-    """The accepted results that share a stretch with the new one and were drawn before it."""
-    series = [r for r in history.reported(reading.measurand) if r.drawn_at < bottle.drawn_at]
+def _same_stretch(history: History, bottle: Bottle, reading: Reading, series: Sequence[Reported]) -> list[Reported]:
+    """Of the accepted results drawn before the new one, those that share a stretch with it."""
     keys = [(r.sample.point_id, r.sample.charge_id, r.sample.laboratory_id, r.result.size_scale) for r in series]
     keys.append((bottle.point_id, bottle.charge_id, bottle.laboratory_id, reading.size_scale))
     days = [*(day_of(r.drawn_at) for r in series), day_of(bottle.drawn_at)]
-    stretches = split(days, keys, event_marks(history), Family(family), history.reservoir.volume_l)
+    stretches = split(
+        days, keys, event_marks(history), Family(series[-1].result.measurand.family), history.reservoir.volume_l
+    )
     mine = next(stretch for stretch in stretches if len(series) in stretch.positions)
     return [series[position] for position in mine.positions if position < len(series)]
 

@@ -208,12 +208,16 @@ def _layout(plan: ChartPlan) -> dict[str, Any]:
     return {
         "paper_bgcolor": "rgba(0,0,0,0)",
         "plot_bgcolor": "rgba(0,0,0,0)",
-        "font": {"color": "@ink", "size": 13},
+        "font": {
+            "color": "@ink",
+            "size": 13,
+            "family": "system-ui, -apple-system, Segoe UI, Noto Sans, DejaVu Sans, sans-serif",
+        },
         "margin": {"l": 52, "r": 12, "t": 26, "b": 34},
         "hovermode": "closest",
         "dragmode": False,
         "showlegend": len(plan.lines) > 1,
-        "legend": {"orientation": "h", "y": -0.14, "x": 0},
+        "legend": {"orientation": "h", "y": -0.14, "x": 0, "traceorder": "normal"},
         "xaxis": {"type": "date", "showgrid": False, "linecolor": "@rule", "hoverformat": "%-d %b %Y"},
         "yaxis": axis,
         "shapes": [*_mark_shapes(plan), _now_shape(plan.now)],

@@ -161,7 +161,8 @@ class RowChecker:
                 lines[id(sample)] = one.row.line
                 record.add(sample)
                 self._numbers.setdefault(_number_key(one.entry), one.entry.reservoir)
-                history = history.including(sample)
+                if verdict.state == RowState.ADDS:
+                    history = history.including(sample)
             verdicts.append(verdict)
         return verdicts
 

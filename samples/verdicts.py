@@ -56,7 +56,7 @@ def _direction(outlook: Outlook, measurand: Measurand, zone: ZoneInfo) -> str:
         samples = "sample" if outlook.n == 1 else "samples"
         return f"{what}: {outlook.n} {samples}{since}, too few to show a trend by themselves." if outlook.n else ""
     if outlook.trend not in {"rising", "falling"}:
-        return f"{what} shows no trend{since}."
+        return "" if outlook.runway == RunwayState.PAST else f"{what} shows no trend{since}."
     doubling = outlook.doubling_months
     if doubling is None or abs(doubling) > CLEAR_MONTHS:
         return f"{what} is {outlook.trend}{since}."

@@ -93,7 +93,7 @@ class LogForm(forms.Form):
         wrong_choice = {
             "point": "That is not a sample point of this reservoir. Choose one of the list.",
             "basis": "Counts are per mL or per 100 mL. Choose one of the two.",
-            "water_unit": "Water is in mg/kg or %. Choose one of the two.",
+            "water_unit": "Water is in mg/kg or %%. Choose one of the two.",
             "laboratory": "That laboratory is not registered. Choose one of the list.",
         }
         for name, sentence in wrong_choice.items():

@@ -17,7 +17,7 @@ LABORATORY = known(
         form=LaboratoryForm,
         listed=13,
         intro="Who counted: laboratories, and the plant's own counters.",
-        rows=lambda: Laboratory.objects.annotate(sample_count=Count("samples")),
+        rows=lambda: Laboratory.objects.annotate(sample_count=Count("samples")).order_by("name"),
         search=words_in("name", "notes"),
         columns=(
             Column("Laboratory", attrgetter("name"), sort="name"),

@@ -12,9 +12,9 @@ from django.shortcuts import get_object_or_404, render
 from django.utils import timezone
 
 from fleet.board import board_row
-from fleet.models import Element, FilterPosition, Measurand, Reservoir
+from fleet.models import Element, FilterPosition, Limit, Measurand, Reservoir, Target
 from fleet.wording import headroom_text, runway_aside, runway_text
-from samples.charts import cleanliness_chart, other_charts
+from samples.charts import Chart, cleanliness_chart, other_charts
 from samples.history import History, read_history
 from samples.lines import code_number, figure_key
 from samples.models import Outlook
@@ -46,14 +46,14 @@ def reservoir(request: HttpRequest, tag: str) -> HttpResponse:
     outlooks = {
         one.measurand.key: one for one in Outlook.objects.filter(reservoir=found).select_related("measurand", "sample")
     }
-    chart = cleanliness_chart(history, outlooks, now)
+    first, others = _charts(history, outlooks, now)
     context = {
         "reservoir": found,
         "row": board_row(found, now),
         "charge": history.current_charge,
         "verdict": _verdict(history, outlooks, now),
-        "chart": chart,
-        "others": other_charts(history, outlooks, now),
+        "charts": first,
+        "others": others,
         "latest": _latest(history),
         "lines": [_line(history, outlook, now) for outlook in outlooks.values()],
         "table": history_table(history),
@@ -65,24 +65,45 @@ def reservoir(request: HttpRequest, tag: str) -> HttpResponse:
     return render(request, "samples/reservoir.html", context)
 
 
+def _charts(history: History, outlooks: dict[str, Outlook], now: datetime) -> tuple[list[Chart], list[Chart]]:
+    """The charts that stand first, led by the measurand that speaks for the reservoir, and the small ones."""
+    standing = getattr(history.reservoir, "standing", None)
+    speaks = standing.worst.key if standing and standing.worst else ""
+    cleanliness = cleanliness_chart(history, outlooks, now)
+    others = other_charts(history, outlooks, now)
+    leading = [chart for chart in others if chart.key == speaks]
+    return leading + ([cleanliness] if cleanliness else []), [chart for chart in others if chart.key != speaks]
+
+
 def _verdict(history: History, outlooks: dict[str, Outlook], now: datetime) -> Verdict | None:
     """Of the measurand that speaks for the reservoir; None before anything was computed."""
     standing = getattr(history.reservoir, "standing", None)
     speaks = outlooks.get(standing.worst.key) if standing and standing.worst else None
     if speaks is None:
         return None
-    return verdict(speaks, _figure_text(history, speaks, "limit"), history.reservoir.area.site.zone, now)
+    limit = _in_words(_figure(history, speaks, "limit"), speaks.measurand.key)
+    return verdict(speaks, limit, history.reservoir.area.site.zone, now)
 
 
-def _figure_text(history: History, outlook: Outlook, which: str) -> str:
-    """How the target or limit of a measurand is spoken of: a code number for a count, the figure itself otherwise."""
+def _figure(history: History, outlook: Outlook, which: str) -> Target | Limit | None:
     judged_at = outlook.sample.drawn_at if outlook.sample else outlook.computed_at
     look = history.target_at if which == "target" else history.limit_at
-    found = look(figure_key(outlook.measurand.key), judged_at)
-    if found is None:
+    return look(figure_key(outlook.measurand.key), judged_at)
+
+
+def _in_words(found: Target | Limit | None, key: str) -> str:
+    """How a limit is spoken of: a code number for a count, “600 mg/kg” otherwise."""
+    number = code_number(found, key)
+    if found is None or (found.code and number is None):
         return ""
-    number = code_number(found, outlook.measurand.key)
-    return str(number) if number is not None else found.text if not found.code else ""
+    return found.amount if number is None else str(number)
+
+
+def _in_column(found: Target | Limit | None, key: str) -> str:
+    """How a figure stands in a column whose unit is at the head of the row."""
+    if found is None or found.code or found.basis == "absolute":
+        return _in_words(found, key) if found is None or found.code else found.numbers
+    return found.amount
 
 
 def _line(history: History, outlook: Outlook, now: datetime) -> OutlookLine:
@@ -91,8 +112,8 @@ def _line(history: History, outlook: Outlook, now: datetime) -> OutlookLine:
     return OutlookLine(
         outlook,
         _value(outlook),
-        _figure_text(history, outlook, "target"),
-        _figure_text(history, outlook, "limit"),
+        _in_column(_figure(history, outlook, "target"), outlook.measurand.key),
+        _in_column(_figure(history, outlook, "limit"), outlook.measurand.key),
         headroom_text(outlook.headroom, unit),
         runway_text(outlook, now),
         runway_aside(outlook),
