@@ -64,7 +64,8 @@ def evaluate_overdue(as_of: datetime, mail: bool = True) -> int:
 
 
 def mark_history_judged(as_of: datetime) -> int:
-    """Open the alerts that the standings call for without owing any mail: for history that was loaded in bulk."""
+    """Open the alerts that the standings call for, dated by their samples and without owing any mail: for history that
+    was loaded in bulk."""
     return evaluate_changed(as_of, mail=False) + evaluate_overdue(as_of, mail=False)
 
 
@@ -158,14 +159,20 @@ def _hear(case: _Case, finding: Finding, was_open: list[Alert]) -> Alert:
             family=finding.family,
             charge_id=finding.charge_id,
             state=Alert.State.OPEN,
-            defaults=_columns(case, finding) | {"opened_at": case.as_of},
+            defaults=_columns(case, finding) | {"opened_at": _opening(case, finding)},
         )
         if opened:
             mailed = _owe_mail(case, alert, finding)
-            tell(alert, case.as_of, f"{alert.get_kind_display().capitalize()}: {alert.headline}{mailed}.")
+            tell(alert, alert.opened_at, f"{alert.get_kind_display().capitalize()}: {alert.headline}{mailed}.")
             return alert
     _update(case, alert, finding)
     return alert
+
+
+def _opening(case: _Case, finding: Finding) -> datetime:
+    """Now; for history the day of the sample or of the missed one, so that its age is not that of the loading."""
+    happened = finding.due_at or finding.drawn_at
+    return case.as_of if case.mail or happened is None else min(happened, case.as_of)
 
 
 def _same_trouble(finding: Finding, was_open: list[Alert]) -> Alert | None:

@@ -118,6 +118,16 @@ def test_history_loaded_in_bulk_opens_alerts_and_owes_none() -> None:
     assert not Delivery.objects.exists()
 
 
+def test_history_loaded_in_bulk_is_as_old_as_its_samples() -> None:
+    press, pump = scene.reservoir(name="press"), scene.reservoir(name="pump", interval_days=60)
+    for of, days, values in ((press, 20, PAST), (pump, 100, CLEAN)):
+        builders.sample(of, days_ago(days), values)
+        refresh_outlook(of.pk, NOON)
+    mark_history_judged(NOON)
+    assert Alert.objects.get(reservoir=press).opened_at == days_ago(20)
+    assert Alert.objects.get(reservoir=pump).opened_at == days_ago(40)
+
+
 def test_mail_follows_area_and_kind_of_the_wish() -> None:
     press = scene.reservoir()
     area, site = press.area, press.area.site
