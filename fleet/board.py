@@ -87,7 +87,9 @@ def bar_of(standing: Standing | None) -> Bar:
         return None if steps is None else _x(steps / step)
 
     low, high = along(standing.band_low_at), along(standing.band_high_at)
-    band = (low, high) if low is not None and high is not None else None
+    # What is past its limit gets a date since when, not a forecast.
+    known = low is not None and high is not None and standing.word != StandingWord.PAST_LIMIT
+    band = (low or 0.0, high or 0.0) if known else None
     off = not BAR_LEFT <= standing.value_at / step <= BAR_RIGHT
     limit = _x(0.0) if standing.limit_text or standing.headroom is not None else None
     return Bar(along(standing.value_at), along(standing.target_at), limit, band, off)

@@ -72,14 +72,27 @@ class Figure(models.Model):
 
     @property
     def text(self) -> str:
-        """The figure as a person writes it: 18/16/13, at most 200 mg/kg, −10 … +10 %."""
+        """The figure as a person writes it: 18/16/13, at most 200 mg/kg, −10 to 10 % of new."""
+        one_sided = "" if self.code or (self.low is not None and self.high is not None) else self._side_word
+        return f"{one_sided} {self.amount}".strip()
+
+    @property
+    def amount(self) -> str:
+        """The same without the word for its side: 200 mg/kg."""
+        unit = {"percent": "% of new", "change": f"{self.measurand.unit} over new"}.get(self.basis, self.measurand.unit)
+        return self.code or f"{self.numbers} {unit}".strip()
+
+    @property
+    def numbers(self) -> str:
+        """The bare numbers, for a column that has its unit at the head; a percentage keeps its sign."""
         if self.code:
             return self.code
-        unit = {"percent": "% of new", "change": f"{self.measurand.unit} over new"}.get(self.basis, self.measurand.unit)
-        sides = [f"{self.low:g}" if self.low is not None else "", f"{self.high:g}" if self.high is not None else ""]
-        if all(sides):
-            return f"{sides[0]} to {sides[1]} {unit}".strip()
-        return f"{'at most' if sides[1] else 'at least'} {sides[1] or sides[0]} {unit}".strip()
+        sides = [f"{side:g}".replace("-", "\N{MINUS SIGN}") for side in (self.low, self.high) if side is not None]
+        return " to ".join(sides)
+
+    @property
+    def _side_word(self) -> str:
+        return "at most" if self.high is not None else "at least"
 
     def clean(self) -> None:
         if self.code:

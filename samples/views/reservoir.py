@@ -12,7 +12,7 @@ from django.shortcuts import get_object_or_404, render
 from django.utils import timezone
 
 from fleet.board import board_row
-from fleet.models import Element, FilterPosition, Limit, Measurand, Reservoir, Target
+from fleet.models import Element, FilterPosition, Limit, Measurand, Reservoir, RunwayState, Target
 from fleet.wording import headroom_text, runway_aside, runway_text
 from samples.charts import Chart, cleanliness_chart, other_charts
 from samples.history import History, read_history
@@ -108,7 +108,7 @@ def _in_column(found: Target | Limit | None, key: str) -> str:
 
 def _line(history: History, outlook: Outlook, now: datetime) -> OutlookLine:
     unit = "steps" if outlook.measurand.kind == Measurand.Kind.COUNT else "%"
-    chance = outlook.chance_before_next
+    chance = None if outlook.runway == RunwayState.PAST else outlook.chance_before_next
     return OutlookLine(
         outlook,
         _value(outlook),
