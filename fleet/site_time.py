@@ -7,7 +7,7 @@ GAP = "That hour did not exist: the clocks were put forward. Give the time after
 
 
 def moment_at(written: datetime, zone: ZoneInfo) -> datetime:
-    """The moment that a clock of the site showed as `written` (no zone of its own), in UTC. Of a doubled hour, the first.
+    """The moment, in UTC, that a clock of the site showed as `written` (without a zone). Of a doubled hour, the first.
 
     :raises ValueError: when the clocks skipped it
 

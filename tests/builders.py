@@ -1,8 +1,11 @@
 """Plain builders with readable defaults: what a test does not name, it does not care about. Nothing here is random."""
 
 from datetime import UTC, date, datetime, timedelta
+from functools import cache
 from itertools import count
 from typing import Any
+
+from django.contrib.auth.hashers import make_password
 
 from fleet import catalogue
 from fleet.models import (
@@ -26,7 +29,10 @@ from fleet.models import (
 from samples.models import Laboratory, Result, Sample
 
 NOON = datetime(2026, 6, 1, 12, tzinfo=UTC)
+PASSWORD = "a long enough word"
 _number = count(1)
+# Hashing is slow on purpose; once is enough for everybody.
+_hashed = cache(make_password)
 
 
 def days_ago(days: float, as_of: datetime = NOON) -> datetime:
@@ -36,7 +42,7 @@ def days_ago(days: float, as_of: datetime = NOON) -> datetime:
 def person(role: Role = Role.TECHNICIAN, **more: Any) -> Person:
     name = more.pop("username", f"{role}{next(_number)}")
     made = Person(username=name, role=role, email=more.pop("email", f"{name}@plant.example"), **more)
-    made.set_password("a long enough word")
+    made.password = _hashed(PASSWORD)
     made.save()
     return made
 

@@ -53,7 +53,7 @@ FLUID = known(
         model=Fluid,
         form=FluidForm,
         intro="Oils as bought, with what new oil measures.",
-        rows=lambda: Fluid.objects.annotate(in_use=Count("charges", filter=Q(charges__ended_at=None))),
+        rows=lambda: Fluid.objects.annotate(in_use=Count("charges", filter=Q(charges__ended_at=None))).order_by("name"),
         search=words_in("name", "kind"),
         save=_save_fluid,
         columns=(

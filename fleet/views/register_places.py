@@ -43,7 +43,7 @@ SITE = known(
         form=SiteForm,
         write=Role.ADMINISTRATOR,
         intro="A plant with its own clock.",
-        rows=lambda: Site.objects.annotate(area_count=Count("areas")),
+        rows=lambda: Site.objects.annotate(area_count=Count("areas")).order_by("name"),
         search=words_in("name"),
         columns=(
             Column("Site", attrgetter("name"), sort="name"),
@@ -63,8 +63,12 @@ AREA = known(
         model=Area,
         form=AreaForm,
         intro="A part of the plant that people walk and plan as one.",
-        rows=lambda: Area.objects.select_related("site").annotate(
-            machine_count=Count("machines", distinct=True), reservoir_count=Count("reservoirs", distinct=True)
+        rows=lambda: (
+            Area.objects.select_related("site")
+            .annotate(
+                machine_count=Count("machines", distinct=True), reservoir_count=Count("reservoirs", distinct=True)
+            )
+            .order_by("site__name", "name")
         ),
         search=words_in("name", "site__name"),
         within={"site": "site"},
@@ -87,7 +91,11 @@ MACHINE = known(
         model=Machine,
         form=MachineForm,
         intro="What the oil works for.",
-        rows=lambda: Machine.objects.select_related("area").annotate(reservoir_count=Count("reservoirs")),
+        rows=lambda: (
+            Machine.objects.select_related("area")
+            .annotate(reservoir_count=Count("reservoirs"))
+            .order_by("area__name", "name")
+        ),
         search=words_in("name", "tag", "area__name"),
         within={"area": "area"},
         area="area",
