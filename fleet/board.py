@@ -9,6 +9,7 @@ from typing import Any
 from django.db.models import Count, F, Q, QuerySet
 
 from fleet.models import Reservoir, RunwayState, Standing, StandingWord
+from fleet.querysets import ReservoirQuerySet
 from fleet.wording import age_text, headroom_text, runway_aside, runway_text
 
 FORECAST_DAYS = 30
@@ -155,7 +156,7 @@ def coming_soon(soon: datetime) -> Q:
     )
 
 
-def ordered(reservoirs: QuerySet[Reservoir], sort: str, downward: bool) -> QuerySet[Reservoir]:
+def ordered(reservoirs: ReservoirQuerySet, sort: str, downward: bool) -> ReservoirQuerySet:
     """In the order asked for; equal rows by criticality and then by name, so that the order never flickers."""
     keys = [key.copy() for key in SORTS.get(sort, SORTS["worst"])]
     if downward:

@@ -11,14 +11,25 @@ ROOT = Path(__file__).resolve().parent.parent
 APPS = ("alerts", "samples", "fleet")
 PURE = (
     "fleet/codes.py",
+    "fleet/figures.py",
     "fleet/mass_balance.py",
+    "fleet/wording.py",
+    "samples/demo/mill.py",
+    "samples/demo/plan.py",
+    "samples/demo/simulator.py",
+    "samples/demo/stories.py",
+    "samples/figures.py",
+    "samples/lines.py",
+    "samples/sample_codes.py",
     "samples/problems.py",
     "samples/readings.py",
     "samples/coding",
     "samples/trends",
     "samples/checks",
     "samples/intake",
+    "alerts/advice.py",
     "alerts/rules.py",
+    "alerts/sentences.py",
 )
 OUTSIDE = {
     *("django", "celery", "psycopg", "redis", "requests", "environs", "plotly"),

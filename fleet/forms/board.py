@@ -5,10 +5,11 @@ from datetime import datetime, timedelta
 from typing import Any, cast
 
 from django import forms
-from django.db.models import Q, QuerySet
+from django.db.models import Q
 
 from fleet.board import FORECAST_DAYS, coming_soon
 from fleet.models import Area, Fluid, Reservoir, ReservoirClass, StandingWord
+from fleet.querysets import ReservoirQuerySet
 
 SHOW = [
     ("", "Everything, worst first"),
@@ -47,17 +48,17 @@ class BoardFilter(forms.Form):
     def _offer(self, name: str, everything: str, choices: Iterable[tuple[int, str]]) -> None:
         cast(forms.ChoiceField, self.fields[name]).choices = [("", everything), *choices]
 
-    def place(self) -> QuerySet[Reservoir]:
+    def place(self) -> ReservoirQuerySet:
         """The part of the plant that is asked for, whatever stands there: what the totals speak of."""
         chosen = self.cleaned_data if self.is_valid() else {}
-        found: QuerySet[Reservoir] = Reservoir.objects.active()
+        found: ReservoirQuerySet = Reservoir.objects.active()
         wanted = {"area__site": chosen.get("site"), "area": chosen.get("area"), "reservoir_class": chosen.get("kind")}
         found = found.filter(**{name: value for name, value in wanted.items() if value})
         if chosen.get("fluid"):
             found = found.filter(charges__fluid=chosen["fluid"], charges__ended_at=None)
         return found
 
-    def narrow(self, found: QuerySet[Reservoir], as_of: datetime) -> QuerySet[Reservoir]:
+    def narrow(self, found: ReservoirQuerySet, as_of: datetime) -> ReservoirQuerySet:
         """Of those, the ones that stand as asked for and carry the words typed."""
         chosen = self.cleaned_data if self.is_valid() else {}
         show = chosen.get("show") or ""
@@ -65,7 +66,7 @@ class BoardFilter(forms.Form):
             found = found.filter(standing__word=show)
         elif show:
             found = found.filter(self._special(show, as_of))
-        return found.finding(chosen["q"]) if chosen.get("q") else found  # type: ignore[attr-defined]
+        return found.finding(chosen["q"]) if chosen.get("q") else found
 
     def _special(self, show: str, as_of: datetime) -> Q:
         return {

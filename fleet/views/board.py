@@ -1,14 +1,15 @@
 """The first page: every reservoir, worst first."""
 
 from django.core.paginator import Paginator
-from django.http import HttpRequest, HttpResponse
+from django.http import HttpRequest, HttpResponseBase
 from django.shortcuts import render
 from django.utils import timezone
 from django.utils.http import urlencode
 
-from fleet.board import SORTS, board_row, ordered, totals
+from fleet.board import SORTS, BoardRow, board_row, ordered, totals
+from fleet.export import csv_response
 from fleet.forms.board import BoardFilter
-from fleet.models import Reservoir
+from fleet.models import Reservoir, StandingWord
 
 A_PAGE = 100
 COLUMNS = [
@@ -23,13 +24,21 @@ COLUMNS = [
 ]
 
 
-def board(request: HttpRequest) -> HttpResponse:
+CSV_HEADINGS = [
+    *("tag", "machine", "reservoir", "area", "criticality", "standing", "code", "target", "limit", "because"),
+    *("headroom", "headroom unit", "runway", "chance before next sample", "last drawn", "next planned"),
+]
+
+
+def board(request: HttpRequest) -> HttpResponseBase:
     as_of = timezone.now()
     form = BoardFilter(request.GET or None)
     sort = request.GET.get("sort", "")
     place = form.place()
-    shown = ordered(form.narrow(place, as_of), sort.removeprefix("-"), sort.startswith("-"))
-    page = Paginator(shown.with_standing(), A_PAGE).get_page(request.GET.get("page"))  # type: ignore[attr-defined]
+    shown = ordered(form.narrow(place, as_of), sort.removeprefix("-"), sort.startswith("-")).with_standing()
+    if request.GET.get("format") == "csv":
+        return csv_response("board", CSV_HEADINGS, (_csv_row(board_row(one, as_of)) for one in shown.iterator()))
+    page = Paginator(shown, A_PAGE).get_page(request.GET.get("page"))
     rows = [board_row(reservoir, as_of) for reservoir in page]
     context = {
         "form": form,
@@ -39,9 +48,24 @@ def board(request: HttpRequest) -> HttpResponse:
         "page": page,
         "columns": _columns(request, sort),
         "here": _address(request),
+        "csv": _address(request, format="csv"),
         "empty": not page and not Reservoir.objects.exists(),
     }
     return render(request, "fleet/board.html", context)
+
+
+def _csv_row(row: BoardRow) -> list[object]:
+    reservoir, standing = row.reservoir, row.standing
+    place = [reservoir.tag, reservoir.machine.name, reservoir.name, reservoir.area.name, reservoir.criticality]
+    word = StandingWord(row.word).label
+    if standing is None:
+        return [*place, word]
+    figures = [standing.code_text, standing.target_text, standing.limit_text, standing.because, standing.headroom]
+    chance = standing.chance_before_next
+    return [
+        *(*place, word, *figures, standing.headroom_unit, row.runway, chance),
+        *(standing.last_drawn_at, standing.next_due_at),
+    ]
 
 
 def _columns(request: HttpRequest, sort: str) -> list[dict[str, str]]:

@@ -7,11 +7,12 @@ from datetime import datetime
 from typing import Any
 
 from django.db.models import Prefetch
-from django.http import HttpRequest, HttpResponse
+from django.http import HttpRequest, HttpResponseBase
 from django.shortcuts import get_object_or_404, render
 from django.utils import timezone
 
 from fleet.board import board_row
+from fleet.export import csv_response
 from fleet.models import Element, FilterPosition, Limit, Measurand, Reservoir, RunwayState, Target
 from fleet.wording import headroom_text, runway_aside, runway_text
 from samples.charts import Chart, cleanliness_chart, other_charts
@@ -19,7 +20,7 @@ from samples.history import History, read_history
 from samples.lines import code_number, figure_key
 from samples.models import Outlook
 from samples.sample_codes import code_text
-from samples.tables import history_table
+from samples.tables import history_csv, history_table
 from samples.trends.forecast import chance_words
 from samples.verdicts import Verdict, slope_text, verdict
 
@@ -39,10 +40,12 @@ class OutlookLine:
     slope: str
 
 
-def reservoir(request: HttpRequest, tag: str) -> HttpResponse:
+def reservoir(request: HttpRequest, tag: str) -> HttpResponseBase:
     now = timezone.now()
     found = get_object_or_404(Reservoir.objects.with_standing(), tag=tag)
     history = read_history(found)
+    if request.GET.get("format") == "csv":
+        return csv_response(f"{found.tag}-samples", *history_csv(history))
     outlooks = {
         one.measurand.key: one for one in Outlook.objects.filter(reservoir=found).select_related("measurand", "sample")
     }

@@ -103,3 +103,13 @@ def test_a_flat_history_draws_a_calm_line() -> None:
     points, end = spark_of([12.0, 12.1, 12.0])
     assert end == (90.0, 10.5)
     assert points.startswith("0.0,10.5")
+
+
+def test_the_rows_shown_come_out_as_csv(reader: Client) -> None:
+    standing("fine")
+    standing("past", "past_limit", -1.0, code_text="22/20/17")
+    page = reader.get("/?show=past_limit&format=csv")
+    heading, row, *rest = b"".join(page.streaming_content).decode("utf-8-sig").splitlines()  # type: ignore[attr-defined]
+    assert heading.startswith("tag,machine,reservoir")
+    assert ",past limit,22/20/17," in row
+    assert rest == []
