@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any, ClassVar, cast
 from django import forms
 from django.core.exceptions import NON_FIELD_ERRORS, ValidationError
 from django.db import models
+from django.forms.models import construct_instance
 from django.utils import timezone
 
 from fleet.models import Site
@@ -136,8 +137,18 @@ class PlantForm(ModelForm):
             return None
         return moment
 
-    def validate_constraints(self) -> None:
-        """Every rule of the table, each with its own sentence at the field it is about."""
+    def _post_clean(self) -> None:
+        """As a model form does, but the rules of the table are said in the register's own words."""
+        exclude = self._get_validation_exclusions()  # type: ignore[attr-defined]
+        self.instance = construct_instance(self, self.instance, self._meta.fields, self._meta.exclude)
+        try:
+            self.instance.full_clean(exclude=exclude, validate_unique=False, validate_constraints=False)
+        except ValidationError as error:
+            self._update_errors(error)  # type: ignore[attr-defined]
+        self.validate_unique()
+        self._say_broken_rules()
+
+    def _say_broken_rules(self) -> None:
         exclude = self._get_validation_exclusions()  # type: ignore[attr-defined]
         for constraint in self._meta.model._meta.constraints:
             if constraint.name in self.left_to_saving:

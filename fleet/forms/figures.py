@@ -4,6 +4,7 @@ from typing import Any, ClassVar
 
 from django.core.exceptions import ValidationError
 
+from fleet.codes import CodeError, parse_target_code
 from fleet.forms.base import PlantForm, PlantMeta
 from fleet.models import Limit, Machine, Measurand, Reservoir, Scope, Site, Target
 from fleet.models.targets import Figure
@@ -62,6 +63,13 @@ class FigureForm(PlantForm):
         machine = Machine.objects.filter(reservoirs=int(chosen)).first() if chosen.isdigit() else None
         return machine.maker_requirement if machine else ""
 
+    def clean_code(self) -> str:
+        code = self.cleaned_data["code"]
+        try:
+            return str(parse_target_code(code)) if code else ""
+        except CodeError as error:
+            raise ValidationError(error.sentence, code=error.code) from error
+
     def clean(self) -> dict[str, Any]:
         cleaned = super().clean()
         if scope := cleaned.get("scope"):
@@ -96,6 +104,8 @@ class FigureForm(PlantForm):
             self._refuse(bad_side, f"{measurand.name}: {measurand.get_direction_display()}, so fill this in.", "side")
         elif not sides and not {"low", "high"} & set(self.errors):
             self._refuse("high", "Fill in one side or both.", "side")
+        if len(sides) == 2 and cleaned["low"] >= cleaned["high"]:
+            self._refuse("high", "The upper side must lie above the lower one.", "sides_crossed")
         if cleaned.get("basis") != Figure.Basis.ABSOLUTE and measurand.key not in AGAINST_NEW_OIL:
             self._refuse("basis", f"No new-oil figure is kept for {measurand.name}: choose the value itself.", "basis")
 

@@ -8,6 +8,7 @@ from django.core.exceptions import ValidationError
 
 from fleet.forms.base import PlantForm, PlantMeta
 from fleet.models import Element, FilterPosition, Reservoir
+from fleet.refusals import SENTENCES
 from fleet.site_time import written_at
 
 
@@ -69,6 +70,9 @@ class ElementForm(PlantForm):
 
     def clean(self) -> dict[str, Any]:
         cleaned = super().clean()
+        if (cleaned.get("beta") is None) != (cleaned.get("beta_size_um") is None) and not self.errors:
+            missing = "beta" if cleaned.get("beta") is None else "beta_size_um"
+            self.say(SENTENCES["element_beta_with_size"][1], missing, "element_beta_with_size")
         position = cleaned.get("position")
         if position is not None:
             today = written_at(self.now, position.reservoir.area.site.zone).date()
