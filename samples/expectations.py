@@ -16,7 +16,7 @@ from samples.readings import Reading
 from samples.trends.arrays import DAYS_PER_MONTH
 from samples.trends.forecast import forecast_at
 from samples.trends.level import LevelParameters
-from samples.trends.scales import ScaleSpec, to_scale
+from samples.trends.scales import ScaleSpec, rounding_variance, to_scale
 from samples.trends.stretch import Family, split
 
 FEWEST_EARLIER = 3
@@ -40,6 +40,10 @@ class _Follow:
     earlier: Sequence[Reported]
     spec: ScaleSpec
     parameters: LevelParameters
+
+    @property
+    def value(self) -> float:
+        return np.nan if self.reading.value is None else self.reading.value
 
 
 def expectations(history: History, bottle: Bottle, readings: Iterable[Reading]) -> list[Expectation]:
@@ -91,9 +95,9 @@ def _expected(followed: Sequence[_Follow], bottle: Bottle) -> list[Expectation]:
         Expectation(
             measurand=one.reading.measurand,
             label=one.earlier[-1].result.measurand.name,
-            observed=float(to_scale(np.nan if one.reading.value is None else one.reading.value, one.spec)),
+            observed=float(to_scale(one.value, one.spec)),
             mean=float(law.mean[row]),
-            scale=float(np.sqrt(law.variance[row])),
+            scale=float(np.sqrt(law.variance[row] + rounding_variance(one.value, one.spec))),
         )
         for row, one in enumerate(followed)
     ]

@@ -233,7 +233,7 @@ ROWS: dict[str, tuple[Row, ...]] = {
     "Finishing": (
         ("Edge trimmer", "servo pack", "servo", 220, "HM 32", 30, "A", 1.7, "servo drift"),
         ("Sander 1", "hydraulic pack", "hydraulic", 360, "HM 46", 60, "B", 1.5, "thirsty"),
-        ("Sander 2", "hydraulic pack", "hydraulic", 360, "HM 46", 60, "B", 1.6, ""),
+        ("Sander 2", "hydraulic pack", "hydraulic", 360, "HM 46", 60, "B", 1.6, "bottle in doubt"),
         ("Saw line", "infeed pack", "hydraulic", 410, "HM 46", 45, "B", 1.5, "dirty bottle"),
         ("Saw line", "scoring saw gearbox", "sump_gearbox", 22, "CLP 220", 120, "C", 1.3, ""),
         ("Strapping line", "press pack", "gear_pump", 150, "HM 46", 90, "C", 1.5, "codes"),

@@ -103,8 +103,9 @@ _STORIES: dict[str, Story] = {
         events=(PlannedEvent(_ago(350), EventKind.OFFLINE_RUN, "Filter cart for 24 h, wiper seal renewed."),),
     ),
     "dirty bottle": Story(last_sample_ago=12, dirty_bottles=(4,)),
+    "bottle in doubt": Story(last_sample_ago=5, dirty_bottles=(1,)),
     "servo drift": Story(
-        changes=(Change(_ago(270), HISTORY_DAYS, climb=0.32),),
+        changes=(Change(_ago(270), HISTORY_DAYS, climb=0.37),),
         events=(PlannedEvent(_ago(340), EventKind.ELEMENT_CHANGE, "Yearly element.", position="Pressure line"),),
         treatments=(Treatment(_ago(340), new_element=True),),
         last_sample_ago=11,

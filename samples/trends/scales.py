@@ -125,6 +125,18 @@ def observe(
     return Observed(y, np.where(exact, 0.0, width**2 / 12.0), open_ended | qualified)
 
 
+def rounding_variance(value: float, spec: ScaleSpec) -> float:
+    """Variance (y²) that comes from reporting in whole steps of the reporting limit; nought on the other scales.
+
+    `value`: unit of the result. A uniform law of the step's width, carried to the log scale by its slope at the value:
+    near the reporting limit one step more or less is a large part of a doubling and says nothing.
+    """
+    if spec.scale is not Scale.LOG:
+        return 0.0
+    slope = 1.0 / ((max(value, 0.0) + spec.offset) * np.log(2.0))
+    return float(spec.reporting_limit**2 / 12.0 * slope**2)
+
+
 def _log2_count(per_ml: FloatArray) -> FloatArray:
     with np.errstate(divide="ignore", invalid="ignore"):
         y = np.log2(per_ml / COUNT_UNIT_PER_ML)

@@ -43,7 +43,8 @@ def best_of(work: Callable[[], object], times: int = 5) -> float:
 def test_name_the_machine(capsys: pytest.CaptureFixture[str]) -> None:
     with quietly(capsys) as say:
         say(
-            f"\n{platform.machine()}, {os.cpu_count()} cores, Python {platform.python_version()}, numpy {np.__version__}"
+            f"\n{platform.machine()}, {os.cpu_count()} cores, "
+            f"Python {platform.python_version()}, numpy {np.__version__}"
         )
 
 

@@ -13,6 +13,7 @@ from samples.trends.scales import (
     figure_to_y,
     from_scale,
     observe,
+    rounding_variance,
     to_scale,
     value_to_figure,
     y_to_figure,
@@ -87,3 +88,10 @@ def test_a_range_of_water_stands_at_its_middle_with_its_own_variance() -> None:
     found = observe([NAN], [22.0], [118.0], [""], WATER)
     assert found.y[0] == pytest.approx(6.0)
     assert found.extra_variance[0] == pytest.approx(4.0 / 12.0)
+
+
+def test_near_the_reporting_limit_rounding_is_most_of_what_is_seen() -> None:
+    metal = ScaleSpec(Scale.LOG, reporting_limit=1.0)
+    assert rounding_variance(1.0, metal) > 0.07
+    assert rounding_variance(100.0, metal) < 1e-4
+    assert rounding_variance(100.0, ScaleSpec(Scale.COUNT)) == 0.0
