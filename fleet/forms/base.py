@@ -7,7 +7,7 @@ from datetime import UTC, datetime
 from typing import TYPE_CHECKING, Any, ClassVar, cast
 
 from django import forms
-from django.core.exceptions import NON_FIELD_ERRORS, ValidationError
+from django.core.exceptions import ValidationError
 from django.db import models
 from django.forms.models import construct_instance
 from django.utils import timezone
@@ -71,8 +71,9 @@ def plant_field(column: models.Field[Any, Any], **more: Any) -> forms.Field | No
 
 
 def _say_nothing_chosen(field: forms.Field) -> None:
-    """Words for the empty choice, instead of a row of dashes."""
+    """Words for the empty choice, instead of a row of dashes, and for a field that was left empty."""
     words = "choose" if field.required else "none"
+    field.error_messages["required"] = "Choose one." if isinstance(field, forms.ChoiceField) else "Fill this in."
     if isinstance(field, forms.ModelChoiceField):
         if field.empty_label is not None:
             field.empty_label = words
@@ -178,10 +179,8 @@ class PlantForm(ModelForm):
 
 
 def summary(form: forms.BaseForm) -> list[tuple[str, str, str]]:
-    """Every error of a form as (id of the field or empty, its label, the sentence), for the list at the top."""
-    lines = []
-    for name, errors in form.errors.items():
-        field = form[name] if name in form.fields and name != NON_FIELD_ERRORS else None
-        where = (field.id_for_label, str(field.label)) if field is not None else ("", "")
-        lines += [(*where, str(sentence)) for sentence in errors]
+    """Every error as (id of the field or empty, its label, the sentence), in the order of the form, for the list on top."""
+    lines = [("", "", str(sentence)) for sentence in form.non_field_errors()]
+    for field in form:
+        lines += [(field.id_for_label, str(field.label), str(sentence)) for sentence in field.errors]
     return lines

@@ -1,9 +1,11 @@
 """Logging what was done to the oil, and the oil charges that follow from it."""
 
 from datetime import datetime
+from threading import Barrier, Thread
 from typing import Any
 
 import pytest
+from django.db import connection
 
 from fleet import events
 from fleet.models import Event, OilCharge, Reservoir, Standing
@@ -148,3 +150,22 @@ def test_every_change_asks_for_a_fresh_outlook() -> None:
         Standing.objects.update(wanted_at=None)
         change(event, NOON)
         assert Standing.objects.get(reservoir=tank).wanted_at == NOON
+
+
+@pytest.mark.django_db(transaction=True)
+def test_two_people_who_log_oil_changes_at_once_leave_whole_fillings() -> None:
+    tank = reservoir()
+    moments = [days_ago(30), days_ago(20)]
+    start = Barrier(2)
+
+    def log(at: datetime) -> None:
+        start.wait()
+        oil_change(tank, at)
+        connection.close()
+
+    threads = [Thread(target=log, args=[at]) for at in moments]
+    for thread in threads:
+        thread.start()
+    for thread in threads:
+        thread.join()
+    assert fillings(tank) == [(FILLED, moments[0]), (moments[0], moments[1]), (moments[1], None)]

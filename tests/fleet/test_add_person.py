@@ -1,0 +1,30 @@
+"""The command that makes the first administrator."""
+
+import pytest
+from django.core.management import CommandError, call_command
+
+from fleet.models import Person, Role
+
+pytestmark = pytest.mark.django_db
+
+
+def test_it_makes_an_administrator_who_can_log_in(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setenv("FIRST_PASSWORD", "a long enough word")
+    call_command("add_person", "ada", "--password-from", "FIRST_PASSWORD")
+    ada = Person.objects.get(username="ada")
+    assert (ada.role, ada.check_password("a long enough word")) == (Role.ADMINISTRATOR, True)
+
+
+@pytest.mark.parametrize("password", ["", "12345"])
+def test_a_weak_password_is_refused(monkeypatch: pytest.MonkeyPatch, password: str) -> None:
+    monkeypatch.setenv("FIRST_PASSWORD", password)
+    with pytest.raises(CommandError, match="password"):
+        call_command("add_person", "ada", "--password-from", "FIRST_PASSWORD")
+    assert not Person.objects.exists()
+
+
+def test_a_login_name_that_is_taken_is_refused(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setenv("FIRST_PASSWORD", "a long enough word")
+    call_command("add_person", "ada", "--password-from", "FIRST_PASSWORD")
+    with pytest.raises(CommandError, match="already exists"):
+        call_command("add_person", "ada", "--password-from", "FIRST_PASSWORD")
