@@ -53,13 +53,19 @@ def span_text(days: int) -> str:
 def runway_text(outlook: HasRunway, as_of: datetime) -> str:
     """“18 days (9 – 41)”, “35 days at the earliest”, “beyond 24 months”, “passed 20 days ago” or “cannot say”."""
     if outlook.runway == "past":
-        since = outlook.past_since
-        return f"passed {span_text(days_between(since, as_of))} ago" if since else "past already"
+        return _passed_text(outlook.past_since, as_of)
     if outlook.runway == "beyond_horizon":
         return BEYOND
     if outlook.runway != "dated":
         return "cannot say"
     return _dated_text(outlook, as_of)
+
+
+def _passed_text(since: datetime | None, as_of: datetime) -> str:
+    if since is None:
+        return "past already"
+    days = days_between(since, as_of)
+    return f"passed {span_text(days)} ago" if days else "passed today"
 
 
 def runway_aside(outlook: HasRunway) -> str:

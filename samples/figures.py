@@ -204,7 +204,7 @@ def _layout(plan: ChartPlan) -> dict[str, Any]:
     if plan.log_axis:
         axis |= {"type": "log", "dtick": 1}
     if plan.tick_step:
-        axis |= {"dtick": plan.tick_step}
+        axis |= {"dtick": plan.tick_step, "range": _range(plan)}
     return {
         "paper_bgcolor": "rgba(0,0,0,0)",
         "plot_bgcolor": "rgba(0,0,0,0)",
@@ -223,6 +223,15 @@ def _layout(plan: ChartPlan) -> dict[str, Any]:
         "shapes": [*_mark_shapes(plan), _now_shape(plan.now)],
         "annotations": [_mark_note(mark) for mark in plan.marks if mark.breaks],
     }
+
+
+def _range(plan: ChartPlan) -> list[float]:
+    """From half a step below the lowest to half a step above the highest thing drawn."""
+    dots = [dot.y for line in plan.lines for stretch in line.stretches for dot in stretch]
+    steps = [step.y for line in plan.lines for step in (*line.targets, *line.limits)]
+    edges = [y for line in plan.lines if line.fan for y in (*line.fan.low, *line.fan.high)]
+    drawn = [*dots, *steps, *edges]
+    return [min(drawn) - 0.5, max(drawn) + 0.5]
 
 
 def _mark_shapes(plan: ChartPlan) -> list[dict[str, Any]]:

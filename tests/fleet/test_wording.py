@@ -47,6 +47,7 @@ def test_a_runway_whose_middle_lies_beyond_the_horizon_says_how_soon_it_could_be
 
 def test_past_beyond_and_refused_are_words() -> None:
     assert runway_text(runway("past", since=-20), NOON) == "passed 20 days ago"
+    assert runway_text(runway("past", since=-0.2), NOON) == "passed today"
     assert runway_text(runway("beyond_horizon"), NOON) == "beyond 24 months"
     assert runway_text(runway("cannot_say"), NOON) == "cannot say"
 
