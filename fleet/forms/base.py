@@ -179,7 +179,7 @@ class PlantForm(ModelForm):
 
 
 def summary(form: forms.BaseForm) -> list[tuple[str, str, str]]:
-    """Every error as (id of the field or empty, its label, the sentence), in the order of the form, for the list on top."""
+    """Every error as (id of its field or empty, label, sentence), in the order of the form: the list at its top."""
     lines = [("", "", str(sentence)) for sentence in form.non_field_errors()]
     for field in form:
         lines += [(field.id_for_label, str(field.label), str(sentence)) for sentence in field.errors]
