@@ -30,19 +30,23 @@ def client_as(role: Role = Role.TECHNICIAN) -> Client:
     return client
 
 
-def typed(reservoir: Reservoir, then: str = "save", drawn: datetime | None = None, **more: str) -> dict[str, str]:
-    """The log form filled in with the least that it needs, and whatever the test adds."""
-    moment = drawn or timezone.now() - timedelta(days=1)
+def typed(reservoir: Reservoir, then: str = "save", **more: str) -> dict[str, str]:
+    """The log form filled in with the least that it needs, drawn yesterday, and whatever the test adds."""
+    moment = timezone.now() - timedelta(days=1)
     return {
         "reservoir": reservoir.tag,
         "point": str(reservoir.points.get(is_default=True).pk),
-        "drawn_on": moment.strftime("%Y-%m-%d"),
-        "drawn_time": moment.strftime("%H:%M"),
+        **when(moment),
         "method": "unknown",
         "reason": "routine",
         "water_unit": "mg/kg",
         "then": then,
     } | more
+
+
+def when(moment: datetime) -> dict[str, str]:
+    """A moment as the date and the time field of a site in UTC hold it."""
+    return {"drawn_on": moment.strftime("%Y-%m-%d"), "drawn_time": moment.strftime("%H:%M")}
 
 
 def lab_file(*rows: str, headings: str = HEADINGS) -> bytes:

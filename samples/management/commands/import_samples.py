@@ -38,13 +38,13 @@ class Command(BaseCommand):
         if not check.is_good:
             raise CommandError("Nothing was saved.")
         if options["dry_run"] or not check.adds:
-            self.stdout.write(f"{check.adds} samples would be added. Nothing was saved.")
+            self.stdout.write(f"{_samples(check.adds)} would be added. Nothing was saved.")
             return
         try:
             intake = commit_file(check, by=None, now=now)
         except IntakeError as error:
             raise CommandError(error.sentence) from error
-        self.stdout.write(f"{intake.added} samples added.")
+        self.stdout.write(f"{_samples(intake.added)} added.")
 
 
 def _read(path: Path) -> bytes:
@@ -81,6 +81,10 @@ def _row_lines(row: RowVerdict) -> list[str]:
     lines = [f"line {row.line}: {row.state}: {where}. {row.remark}".rstrip()]
     lines += [f"line {row.line}:   doubt: {doubt.sentence} {doubt.settles}" for doubt in row.doubts]
     return lines + [f"line {row.line}:   left out: {_cell(cell.column, cell.value)}{cell.reason}" for cell in row.notes]
+
+
+def _samples(number: int) -> str:
+    return f"{number} sample{'' if number == 1 else 's'}"
 
 
 def _cell(column: str, value: str) -> str:
