@@ -4,11 +4,11 @@ Development and tests need nothing but a database and a broker. Production (SILT
 without a secret key, and turns on every cookie and transport guard.
 """
 
-from datetime import timedelta
 from pathlib import Path
 
 import django_stubs_ext
 import plotly
+from celery.schedules import crontab
 from csp.constants import NONE, SELF, UNSAFE_INLINE
 from django.core.exceptions import ImproperlyConfigured
 from environs import Env
@@ -20,7 +20,13 @@ BASE_DIR = Path(__file__).resolve().parent.parent
 env = Env()
 env.read_env(str(BASE_DIR / ".env"))
 
-DEBUG = env.bool("SILTWATCH_DEBUG", False)
+
+def flag(name: str, default: bool) -> bool:
+    """A yes-or-no variable; set but empty counts as not set."""
+    return env.bool(name) if env.str(name, "") else default
+
+
+DEBUG = flag("SILTWATCH_DEBUG", False)
 SECRET_KEY = env.str("SILTWATCH_SECRET_KEY", "")
 if not SECRET_KEY:
     raise ImproperlyConfigured(
@@ -29,7 +35,7 @@ if not SECRET_KEY:
 ALLOWED_HOSTS = env.list("SILTWATCH_HOSTS", ["localhost", "127.0.0.1", "[::1]"])
 SITE_URL = env.str("SILTWATCH_URL", "http://localhost:8000").rstrip("/")
 CSRF_TRUSTED_ORIGINS = env.list("SILTWATCH_TRUSTED_ORIGINS", [SITE_URL])
-PLAIN_HTTP = env.bool("SILTWATCH_PLAIN_HTTP", DEBUG)
+PLAIN_HTTP = flag("SILTWATCH_PLAIN_HTTP", DEBUG)
 
 INSTALLED_APPS = [
     "fleet",
@@ -124,7 +130,7 @@ STORAGES = {
 SESSION_COOKIE_SECURE = CSRF_COOKIE_SECURE = not PLAIN_HTTP
 SESSION_COOKIE_HTTPONLY = True
 SECURE_SSL_REDIRECT = not PLAIN_HTTP
-SECURE_PROXY_SSL_HEADER = ("HTTP_X_FORWARDED_PROTO", "https") if env.bool("SILTWATCH_BEHIND_PROXY", False) else None
+SECURE_PROXY_SSL_HEADER = ("HTTP_X_FORWARDED_PROTO", "https") if flag("SILTWATCH_BEHIND_PROXY", False) else None
 SECURE_REDIRECT_EXEMPT = [r"^healthz/$"]
 SECURE_HSTS_SECONDS = 0 if PLAIN_HTTP else env.int("SILTWATCH_HSTS_SECONDS", 31_536_000)
 SECURE_HSTS_INCLUDE_SUBDOMAINS = SECURE_HSTS_PRELOAD = not PLAIN_HTTP
@@ -153,7 +159,7 @@ EMAIL_HOST = env.str("SILTWATCH_SMTP_HOST", "localhost")
 EMAIL_PORT = env.int("SILTWATCH_SMTP_PORT", 25)
 EMAIL_HOST_USER = env.str("SILTWATCH_SMTP_USER", "")
 EMAIL_HOST_PASSWORD = env.str("SILTWATCH_SMTP_PASSWORD", "")
-EMAIL_USE_TLS = env.bool("SILTWATCH_SMTP_TLS", False)
+EMAIL_USE_TLS = flag("SILTWATCH_SMTP_TLS", False)
 EMAIL_TIMEOUT = 20
 DEFAULT_FROM_EMAIL = env.str("SILTWATCH_MAIL_FROM", "Siltwatch <siltwatch@localhost>")
 
@@ -171,7 +177,9 @@ CELERY_TASK_ACKS_LATE = True
 CELERY_TASK_REJECT_ON_WORKER_LOST = True
 CELERY_WORKER_PREFETCH_MULTIPLIER = 1
 CELERY_BROKER_CONNECTION_RETRY_ON_STARTUP = True
-CELERY_BROKER_TRANSPORT_OPTIONS = {"visibility_timeout": 900}
+CELERY_BROKER_TRANSPORT_OPTIONS = {"visibility_timeout": 900, "socket_connect_timeout": 2, "socket_timeout": 30}
+# Nobody waits at a form for a broker that is down: the sweep finds the row.
+CELERY_TASK_PUBLISH_RETRY_POLICY = {"max_retries": 1, "interval_start": 0.1, "interval_max": 0.1}
 CELERY_TASK_SOFT_TIME_LIMIT = 300
 CELERY_TASK_TIME_LIMIT = 360
 CELERY_TIMEZONE = "UTC"
@@ -195,7 +203,7 @@ CELERY_BEAT_SCHEDULE = {
     },
     "refresh-all-outlooks": {
         "task": "samples.tasks.refresh_all",
-        "schedule": timedelta(hours=24),
+        "schedule": crontab(hour=2, minute=10),
         "options": {"expires": 3600},
     },
 }

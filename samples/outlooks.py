@@ -15,7 +15,7 @@ from fleet.models import Measurand, Reservoir, RunwayState, Standing, StandingWo
 from fleet.refresh import want_refresh
 from samples.history import History, Reported, read_history
 from samples.lines import figure_key, line_of
-from samples.models import Outlook
+from samples.models import Outlook, Sample
 from samples.standings import standing_facts
 from samples.trends.arrays import DAYS_PER_MONTH
 from samples.trends.level import LevelParameters, LevelRun, LevelState, run_filter
@@ -63,14 +63,14 @@ def refresh_outlook(reservoir_id: int, now: datetime) -> None:
     standing = Standing.objects.select_for_update(of=("self",)).get(reservoir_id=reservoir_id)
     reservoir = Reservoir.objects.with_place().get(pk=reservoir_id)
     history = read_history(reservoir)
+    _repoint_charges(history)
     computed = compute(history, now)
     _write_outlooks(reservoir, [one.row for one in computed])
-    for name, value in standing_facts(history, computed, now).items():
+    facts = standing_facts(history, computed, now)
+    facts |= {"wanted_at": None, "computed_at": now, "revision": standing.revision + 1}
+    for name, value in facts.items():
         setattr(standing, name, value)
-    standing.wanted_at = None
-    standing.computed_at = now
-    standing.revision += 1
-    standing.save()
+    standing.save(update_fields=list(facts))
 
 
 def want_all(now: datetime) -> None:
@@ -80,6 +80,17 @@ def want_all(now: datetime) -> None:
 
 def wanted_ids() -> list[int]:
     return list(Standing.objects.wanted().values_list("reservoir_id", flat=True))
+
+
+def _repoint_charges(history: History) -> None:
+    """An oil change that is logged late, moved or taken back changes which filling earlier bottles came from."""
+    moved = []
+    for sample in history.samples:
+        charge = history.charge_at(sample.drawn_at)
+        if sample.charge_id != (charge.pk if charge else None):
+            sample.charge = charge
+            moved.append(sample)
+    Sample.objects.bulk_update(moved, ["charge"])
 
 
 def compute(history: History, now: datetime) -> list[Computed]:

@@ -67,7 +67,8 @@ class Element(models.Model):
                 condition=Q(removed_on=None) | Q(removed_on__gte=F("fitted_on")), name="element_span_forward"
             ),
             models.CheckConstraint(
-                condition=Q(beta=None, beta_size_um=None) | Q(beta__gte=1, beta_size_um__gt=0),
+                condition=Q(beta=None, beta_size_um=None)
+                | Q(beta__isnull=False, beta_size_um__isnull=False, beta__gte=1, beta_size_um__gt=0),
                 name="element_beta_with_size",
             ),
             models.CheckConstraint(

@@ -99,9 +99,10 @@ class Figure(models.Model):
             try:
                 self.code = str(parse_target_code(self.code))
             except CodeError as error:
-                raise ValidationError({"code": str(error)}, code=error.code) from error
+                raise ValidationError({"code": ValidationError(str(error), code=error.code)}) from error
         if self.low is not None and self.high is not None and self.low >= self.high:
-            raise ValidationError({"high": "The upper side must lie above the lower one."}, code="sides_crossed")
+            crossed = ValidationError("The upper side must lie above the lower one.", code="sides_crossed")
+            raise ValidationError({"high": crossed})
 
     def is_valid_on(self, day: date) -> bool:
         return self.valid_from <= day

@@ -151,3 +151,14 @@ def test_a_refresh_takes_the_want_away(django_assert_max_num_queries) -> None:  
     with django_assert_max_num_queries(18):
         refresh_outlook(made.pk, NOW)
     assert wanted_ids() == []
+
+
+def test_an_oil_change_logged_late_moves_earlier_bottles_to_the_new_filling() -> None:
+    made = judged()
+    for days in (90, 60, 30):
+        builders.sample(made, builders.days_ago(days), counts(900, 240, 30))
+    OilCharge.objects.filter(reservoir=made).update(ended_at=builders.days_ago(70))
+    new = OilCharge.objects.create(reservoir=made, fluid=builders.fluid(), started_at=builders.days_ago(70))
+    refresh_outlook(made.pk, NOW)
+    assert made.samples.filter(charge=new).count() == 2
+    assert Outlook.objects.get(measurand__key="p4").n == 2
