@@ -30,6 +30,7 @@ FACTS = (
     *("method", "reason", "drawn_by", "running", "oil_temperature_c", "machine_hours", "oil_hours", "litres_added"),
     *("lab_number", "label_code", "bottle_lot", "remark"),
 )
+FOLDED = ("viscosity_100", "base_number", *ELEMENTS, "oil_hours", "drawn_by", "bottle_lot")
 # Where an error of the subject module is shown.
 SHOWN_AT = {"drawn_at": "drawn_on", "counts": "p4", "p5m": "p6", "p15m": "p14"}
 PASTE_ATTRS = {"autocomplete": "off", "placeholder": "19/17/13, or 39120 9610 710 /100 ml, or a line of a mail"}
@@ -199,6 +200,10 @@ class LogForm(forms.Form):
         """Show at its field what the subject module refuses."""
         name = SHOWN_AT.get(error.field, error.field)
         self.add_error(name if name in self.fields else None, ValidationError(error.sentence, code=error.code))
+
+    def needs_more(self) -> bool:
+        """Whether something stands in the part of the form that is folded away."""
+        return any(self[name].value() for name in FOLDED)
 
     def metals(self) -> Iterator[forms.BoundField]:
         return (self[key] for key in ELEMENTS)

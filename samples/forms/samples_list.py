@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from datetime import UTC, datetime, time, timedelta
+from datetime import UTC, datetime, time
 from typing import Any
 
 from django import forms
@@ -45,5 +45,5 @@ class SamplesFilter(forms.Form):
         if chosen.get("since"):
             found = found.filter(drawn_at__gte=datetime.combine(chosen["since"], time.min, UTC))
         if chosen.get("until"):
-            found = found.filter(drawn_at__lt=datetime.combine(chosen["until"], time.min, UTC) + timedelta(days=1))
+            found = found.filter(drawn_at__lte=datetime.combine(chosen["until"], time.max, UTC))
         return found.order_by("-drawn_at", "-pk")

@@ -142,7 +142,9 @@ def test_a_file_of_any_bytes_is_answered(client: Client, data: bytes) -> None:
 
 
 @CALM
-@given(asked=st.dictionaries(st.sampled_from(["q", "reservoir", "verdict", "area", "since", "page"]), ANYTHING))
+@given(
+    asked=st.dictionaries(st.sampled_from(["q", "reservoir", "verdict", "area", "since", "until", "page"]), ANYTHING)
+)
 def test_the_searches_answer_anything(client: Client, asked: dict[str, str]) -> None:
     for address in ("/log/", "/log/find/", "/samples/"):
         assert client.get(address, asked).status_code < 500

@@ -271,3 +271,8 @@ def test_a_code_beside_other_counts_is_doubted(client: Client, press: Reservoir)
     """AWEA RP 508, Figure A: the counts make 18/17/13, not 18/16/13."""
     client.post(LOG, typed(press, paste="18/16/13", p4="2178", p6="847", p14="63", basis="per_ml"))
     assert Sample.objects.get().doubts.get().code == "code_disagrees_with_counts"
+
+
+def test_the_folded_part_stands_open_when_something_is_in_it(client: Client, press: Reservoir) -> None:
+    assert '<details class="more">' in client.get(LOG, {"reservoir": "PR-104"}).content.decode()
+    assert '<details class="more" open>' in client.post(LOG, typed(press, fe="rusty")).content.decode()
