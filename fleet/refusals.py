@@ -12,6 +12,7 @@ SENTENCES: dict[str, tuple[str, str]] = {
     "machine_once_an_area": ("name", "This area has a machine of that name already. Choose another name."),
     "machine_tag_once": ("tag", "Another machine carries this tag. A tag is used once."),
     "reservoir_once_a_machine": ("name", "This machine has a reservoir of that name already. Choose another name."),
+    "reservoir_tag_printable": ("tag", "A tag is printed and typed: letters, digits, spaces and . - _ : only."),
     "reservoir_volume_positive": ("volume_l", "The volume must be more than 0 L."),
     "reservoir_interval_positive": ("interval_days", "There must be at least one day between samples."),
     "alias_once_a_reservoir": ("name", "This reservoir has that other name already."),

@@ -11,15 +11,19 @@ import numpy as np
 from samples.checks.candidates import Expectation
 from samples.history import History, Reported
 from samples.lines import figure_key, line_of
-from samples.outlooks import day_of, event_marks, filter_together, parameters_for, scale_spec
+from samples.outlooks import day_of, event_marks, filter_together, parameters_for, scale_spec, series_key
 from samples.readings import Reading
 from samples.trends.arrays import DAYS_PER_MONTH
 from samples.trends.forecast import forecast_at
 from samples.trends.level import LevelParameters
-from samples.trends.scales import ScaleSpec, rounding_variance, to_scale
+from samples.trends.scales import Scale, ScaleSpec, rounding_variance, to_scale
 from samples.trends.stretch import Family, split
 
 FEWEST_EARLIER = 3
+# What two routine samples differ by anyway (one standard deviation on the scale), so that a quiet history does not make
+# every next figure look odd. From published reproducibility of element analysis at 10 mg/kg (2.4 for copper, 6.9 for
+# lead, as 95 % differences) and of viscosity (about 1 %); the acid number's is common practice.
+LEAST_SPREAD = {Scale.COUNT: 0.30, Scale.LOG: 0.35, Scale.PERCENT: 1.5, Scale.LINEAR: 0.08}
 
 
 @dataclass(frozen=True, slots=True)
@@ -61,8 +65,8 @@ def expectations(history: History, bottle: Bottle, readings: Iterable[Reading]) 
 
 def _same_stretch(history: History, bottle: Bottle, reading: Reading, series: Sequence[Reported]) -> list[Reported]:
     """Of the accepted results drawn before the new one, those that share a stretch with it."""
-    keys = [(r.sample.point_id, r.sample.charge_id, r.sample.laboratory_id, r.result.size_scale) for r in series]
-    keys.append((bottle.point_id, bottle.charge_id, bottle.laboratory_id, reading.size_scale))
+    keys = [series_key(r) for r in series]
+    keys.append((bottle.point_id, bottle.charge_id, bottle.laboratory_id, "", reading.size_scale))
     days = [*(day_of(r.drawn_at) for r in series), day_of(bottle.drawn_at)]
     stretches = split(
         days, keys, event_marks(history), Family(series[-1].result.measurand.family), history.reservoir.volume_l
@@ -97,7 +101,12 @@ def _expected(followed: Sequence[_Follow], bottle: Bottle) -> list[Expectation]:
             label=one.earlier[-1].result.measurand.name,
             observed=float(to_scale(one.value, one.spec)),
             mean=float(law.mean[row]),
-            scale=float(np.sqrt(law.variance[row] + rounding_variance(one.value, one.spec))),
+            scale=_spread(float(law.variance[row]), one),
         )
         for row, one in enumerate(followed)
     ]
+
+
+def _spread(variance: float, one: _Follow) -> float:
+    """The forecast's own spread and that of the rounding, never below what routine samples differ by."""
+    return max(float(np.sqrt(variance + rounding_variance(one.value, one.spec))), LEAST_SPREAD[one.spec.scale])

@@ -124,13 +124,16 @@ def parameters_for(measurand: Measurand, spec: ScaleSpec, limit: Line) -> Starti
 
 def stretches_of(history: History, series: Sequence[Reported], family: str) -> list[Stretch]:
     """The series cut where a point, charge, laboratory, method or size scale changes and where an event resets it."""
-    keys = [
-        (r.sample.point_id, r.sample.charge_id, r.sample.laboratory_id, r.result.method, r.result.size_scale)
-        for r in series
-    ]
+    keys = [series_key(r) for r in series]
     return split(
         [day_of(r.drawn_at) for r in series], keys, event_marks(history), Family(family), history.reservoir.volume_l
     )
+
+
+def series_key(reported: Reported) -> tuple[int, int | None, int | None, str, str]:
+    """What two results must share to share a trend: point, charge, laboratory, method and size scale."""
+    sample, result = reported.sample, reported.result
+    return sample.point_id, sample.charge_id, sample.laboratory_id, result.method, result.size_scale
 
 
 def event_marks(history: History) -> list[EventMark]:

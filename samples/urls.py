@@ -1,6 +1,6 @@
 """Addresses of the samples app."""
 
-from django.urls import URLPattern, path
+from django.urls import URLPattern, path, re_path
 
 from fleet.views.register_paths import noun_paths
 from samples.views.laboratories import LABORATORY
@@ -11,7 +11,7 @@ from samples.views.samples import samples
 from samples.views.upload import upload
 
 urlpatterns: list[URLPattern] = [
-    path("reservoirs/<str:tag>/", reservoir, name="reservoir"),
+    re_path(r"^reservoirs/(?P<tag>[\w.: -]{1,40})/$", reservoir, name="reservoir"),
     path("log/", log, name="log"),
     path("log/find/", log_find, name="log-find"),
     path("log/preview/", log_preview, name="log-preview"),

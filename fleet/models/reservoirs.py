@@ -2,12 +2,15 @@
 
 from datetime import datetime, timedelta
 
-from django.core.validators import MinValueValidator
+from django.core.validators import MinValueValidator, RegexValidator
 from django.db import models
 
 from fleet.models.oil import OilCharge
 from fleet.models.places import Area, Machine
 from fleet.querysets import ReservoirQuerySet
+
+# It stands in an address, on a label and in lab files: nothing that one of them would trip over.
+TAG = r"^[\w.:-]+( [\w.:-]+)*$"
 
 
 class ReservoirClass(models.TextChoices):
@@ -34,7 +37,10 @@ class Reservoir(models.Model):
     also_serves = models.ManyToManyField(Machine, blank=True, related_name="served_by")
     name = models.CharField(max_length=80, help_text="What people call it: drive pack, lube sump.")
     tag = models.CharField(
-        max_length=40, unique=True, help_text="Short, printable, never reused. It stands on the label."
+        max_length=40,
+        unique=True,
+        validators=[RegexValidator(TAG, "A tag is printed and typed: letters, digits, spaces and . - _ : only.")],
+        help_text="Short, printable, never reused. It stands on the label.",
     )
     reservoir_class = models.CharField("class", max_length=12, choices=ReservoirClass)
     criticality = models.CharField(max_length=1, choices=Criticality, default=Criticality.B)
@@ -61,6 +67,7 @@ class Reservoir(models.Model):
         ordering = ["machine__name", "name"]
         constraints = [
             models.UniqueConstraint(fields=["machine", "name"], name="reservoir_once_a_machine"),
+            models.CheckConstraint(condition=models.Q(tag__regex=TAG), name="reservoir_tag_printable"),
             models.CheckConstraint(condition=models.Q(volume_l__gt=0), name="reservoir_volume_positive"),
             models.CheckConstraint(condition=models.Q(interval_days__gte=1), name="reservoir_interval_positive"),
             models.CheckConstraint(

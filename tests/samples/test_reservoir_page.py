@@ -99,6 +99,7 @@ def test_a_reservoir_without_samples_says_so(reader: Client) -> None:
 
 def test_an_unknown_tag_is_not_found(reader: Client) -> None:
     assert reader.get("/reservoirs/NOBODY/").status_code == 404
+    assert reader.get("/reservoirs/%00/").status_code == 404
 
 
 def test_the_samples_come_out_as_csv_with_plain_numbers(reader: Client) -> None:
