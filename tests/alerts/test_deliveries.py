@@ -130,7 +130,7 @@ def test_the_database_refuses_a_second_delivery_for_the_same_reason(delivery: De
 
 
 @pytest.fixture
-def owed_for_real(transactional_db: None, django_db_serialized_rollback: None) -> Delivery:
+def owed_for_real(committed_rows: None) -> Delivery:
     press = scene.reservoir()
     person = scene.subscriber(press)
     alert = Alert.objects.create(

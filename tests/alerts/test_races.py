@@ -16,7 +16,7 @@ from tests.alerts import scene
 from tests.alerts.scene import PAST
 from tests.builders import NOON, days_ago
 
-pytestmark = [pytest.mark.django_db(transaction=True), pytest.mark.usefixtures("django_db_serialized_rollback")]
+pytestmark = pytest.mark.usefixtures("committed_rows")
 
 
 def together(times: int, work: Callable[[], object]) -> list[object]:
