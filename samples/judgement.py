@@ -56,9 +56,9 @@ def _judged(result: Result, history: History, drawn_at: datetime, before: Result
         text=cell_text(result),
         code=str(number_of(result)) if _is_count(result) else "",
         word=_word(result, history, drawn_at, target, limit),
-        target=_figure_text(target, key),
+        target=figure_in_column(target, key),
         target_source=target.source if target else "",
-        limit=_figure_text(limit, key),
+        limit=figure_in_column(limit, key),
         limit_source=limit.source if limit else "",
         before="" if before is None else str(number_of(before)) if _is_count(before) else cell_text(before),
         change="" if before is None else _change(result, before),
@@ -77,14 +77,18 @@ def _word(result: Result, history: History, drawn_at: datetime, target: Target |
     return StandingWord(WORDS[stand(known_range(value, low, high, result.qualifier, spec), target_line, limit_line)])
 
 
-def _figure_text(figure: Target | Limit | None, key: str) -> str:
-    """How the figure is spoken of beside one result: the number of its size, or the figure itself."""
-    if figure is None:
-        return ""
+def figure_in_words(figure: Target | Limit | None, key: str) -> str:
+    """How a figure is spoken of: a code number for a count, “600 mg/kg” otherwise; empty where it leaves a size out."""
     number = code_number(figure, key)
-    if number is not None:
-        return str(number)
-    return "" if figure.code else figure.text
+    if figure is None or (figure.code and number is None):
+        return ""
+    return figure.amount if number is None else str(number)
+
+
+def figure_in_column(figure: Target | Limit | None, key: str) -> str:
+    """How it stands in a column whose unit is at the head of the row: the bare numbers, unless it is a change."""
+    bare = figure is not None and not figure.code and figure.basis == figure.Basis.ABSOLUTE
+    return figure.numbers if figure is not None and bare else figure_in_words(figure, key)
 
 
 def _change(now: Result, before: Result) -> str:

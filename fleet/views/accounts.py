@@ -18,7 +18,7 @@ from fleet.models import Person, Role
 MAY = {
     Role.READER: "look at everything",
     Role.TECHNICIAN: "look at everything, log results and events, and fit elements",
-    Role.ENGINEER: "do all of that, judge results, and edit reservoirs, fluids, targets and limits",
+    Role.ENGINEER: "read and log everything, judge results, and edit reservoirs, fluids, targets and limits",
     Role.ADMINISTRATOR: "do everything, and look after people and sites",
 }
 

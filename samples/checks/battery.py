@@ -51,7 +51,7 @@ def run_checks(
         code_agrees_with_counts(candidate),
         shifted,
         None if shifted else all_counts_moved(candidate, history),
-        *(far_off_the_forecast(each) for each in expectations if each.measurand not in told),
+        *far_off_the_forecast(each for each in expectations if each.measurand not in told),
         copy_of_the_last(candidate, history),
         hours_backwards(candidate, history),
         hours_faster_than_the_clock(candidate, history),

@@ -17,7 +17,8 @@ from fleet.models import Element, FilterPosition, Limit, Measurand, Reservoir, R
 from fleet.wording import headroom_text, runway_aside, runway_text
 from samples.charts import Chart, cleanliness_chart, other_charts
 from samples.history import History, read_history
-from samples.lines import code_number, figure_key
+from samples.judgement import figure_in_column, figure_in_words
+from samples.lines import figure_key
 from samples.models import Outlook
 from samples.sample_codes import code_text
 from samples.tables import history_csv, history_table
@@ -84,7 +85,7 @@ def _verdict(history: History, outlooks: dict[str, Outlook], now: datetime) -> V
     speaks = outlooks.get(standing.worst.key) if standing and standing.worst else None
     if speaks is None:
         return None
-    limit = _in_words(_figure(history, speaks, "limit"), speaks.measurand.key)
+    limit = figure_in_words(_figure(history, speaks, "limit"), speaks.measurand.key)
     return verdict(speaks, limit, history.reservoir.area.site.zone, now)
 
 
@@ -94,29 +95,14 @@ def _figure(history: History, outlook: Outlook, which: str) -> Target | Limit | 
     return look(figure_key(outlook.measurand.key), judged_at)
 
 
-def _in_words(found: Target | Limit | None, key: str) -> str:
-    """How a limit is spoken of: a code number for a count, “600 mg/kg” otherwise."""
-    number = code_number(found, key)
-    if found is None or (found.code and number is None):
-        return ""
-    return found.amount if number is None else str(number)
-
-
-def _in_column(found: Target | Limit | None, key: str) -> str:
-    """How a figure stands in a column whose unit is at the head of the row."""
-    if found is None or found.code or found.basis == "absolute":
-        return _in_words(found, key) if found is None or found.code else found.numbers
-    return found.amount
-
-
 def _line(history: History, outlook: Outlook, now: datetime) -> OutlookLine:
     unit = "steps" if outlook.measurand.kind == Measurand.Kind.COUNT else "%"
     chance = None if outlook.runway == RunwayState.PAST else outlook.chance_before_next
     return OutlookLine(
         outlook,
         _value(outlook),
-        _in_column(_figure(history, outlook, "target"), outlook.measurand.key),
-        _in_column(_figure(history, outlook, "limit"), outlook.measurand.key),
+        figure_in_column(_figure(history, outlook, "target"), outlook.measurand.key),
+        figure_in_column(_figure(history, outlook, "limit"), outlook.measurand.key),
         headroom_text(outlook.headroom, unit),
         runway_text(outlook, now),
         runway_aside(outlook),

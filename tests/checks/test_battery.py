@@ -21,14 +21,23 @@ def count_expectation(observed: float) -> Expectation:
 
 @pytest.mark.parametrize(("observed", "word"), [(11.1, "above"), (7.9, "below")])
 def test_more_than_three_scales_off_the_forecast_is_doubted(observed: float, word: str) -> None:
-    doubt = far_off_the_forecast(count_expectation(observed))
-    assert doubt is not None
+    (doubt,) = far_off_the_forecast([count_expectation(observed)])
     assert word in doubt.sentence
 
 
 def test_three_scales_or_no_forecast_are_not_doubted() -> None:
-    assert far_off_the_forecast(count_expectation(11.0)) is None
-    assert far_off_the_forecast(Expectation("p14", "The count ≥14 µm", 30.0, None, None)) is None
+    unknown = Expectation("p14", "The count ≥14 µm", 30.0, None, None)
+    assert far_off_the_forecast([count_expectation(11.0), unknown]) == []
+
+
+def test_figures_far_off_on_one_side_are_one_doubt() -> None:
+    water, iron = (Expectation(key, name, 9.0, 7.0, 0.2) for key, name in (("water", "Water"), ("fe", "Iron")))
+    copper = Expectation("cu", "Copper", 1.0, 7.0, 0.2)
+    sentences = [doubt.sentence for doubt in far_off_the_forecast([water, iron, copper])]
+    assert sentences == [
+        "Water and iron are far above what the history led to expect.",
+        "Copper is far below what the history led to expect.",
+    ]
 
 
 def test_an_ordinary_sample_has_no_doubt() -> None:
