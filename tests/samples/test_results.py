@@ -94,11 +94,11 @@ def test_every_doubt_is_stored_with_what_settles_it(press: Reservoir) -> None:
     assert all(doubt.settles for doubt in Doubt.objects.all())
 
 
-def test_several_figures_far_off_are_several_doubts(press: Reservoir) -> None:
+def test_figures_far_off_on_both_sides_are_stored_side_by_side(press: Reservoir) -> None:
     for n in range(6):
-        builders.sample(press, days_ago(200 - 30 * n), {"water": 90.0 + n, "fe": 3.0})
+        builders.sample(press, days_ago(200 - 30 * n), {"water": 900.0 + n, "fe": 3.0})
     iron = reading_of("fe", read_number("90"))
-    sample = save(press, [*water("9000"), *([iron] if iron else [])])
+    sample = save(press, [*water("10"), *([iron] if iron else [])])
     assert [doubt.code for doubt in sample.doubts.all()] == ["far_off_forecast", "far_off_forecast"]
 
 
