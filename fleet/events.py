@@ -54,7 +54,7 @@ def remove(event: Event, now: datetime) -> None:
 
 def _hold(reservoir_id: int) -> Reservoir:
     """The reservoir, locked: two people who log at once come one after the other."""
-    reservoir: Reservoir = Reservoir.objects.select_for_update().get(pk=reservoir_id)
+    reservoir: Reservoir = Reservoir.objects.select_for_update(no_key=True).get(pk=reservoir_id)
     return reservoir
 
 

@@ -7,7 +7,17 @@ from datetime import date, datetime
 
 from django.http import StreamingHttpResponse
 
-FORMULA_STARTS = ("=", "+", "-", "@", "\t", "\r")
+# Also the full-width forms, which a spreadsheet may read as the plain ones.
+FORMULA_STARTS = (
+    "=",
+    "+",
+    "-",
+    "@",
+    "\N{FULLWIDTH EQUALS SIGN}",
+    "\N{FULLWIDTH PLUS SIGN}",
+    "\N{FULLWIDTH HYPHEN-MINUS}",
+    "\N{FULLWIDTH COMMERCIAL AT}",
+)
 BYTE_ORDER_MARK = "\N{BOM}"
 
 
@@ -41,7 +51,7 @@ def csv_cell(value: object) -> str:
     if isinstance(value, date):
         return value.isoformat()
     text = str(value)
-    return f"'{text}" if text.startswith(FORMULA_STARTS) and not is_plain_number(text) else text
+    return f"'{text}" if text.lstrip().startswith(FORMULA_STARTS) and not is_plain_number(text) else text
 
 
 def csv_response(name: str, headings: Iterable[str], rows: Iterable[Iterable[object]]) -> StreamingHttpResponse:

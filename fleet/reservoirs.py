@@ -57,7 +57,7 @@ def _machine(area: Area, name: str) -> Machine:
 def save_point(point: SamplePoint, now: datetime) -> SamplePoint:
     """Save a sample point. Made the planned one, it takes that over from the point that was."""
     with refusing():
-        Reservoir.objects.select_for_update().get(pk=point.reservoir_id)
+        Reservoir.objects.select_for_update(no_key=True).get(pk=point.reservoir_id)
         if point.is_default:
             others = SamplePoint.objects.filter(reservoir=point.reservoir_id, is_default=True).exclude(pk=point.pk)
             others.update(is_default=False)

@@ -10,7 +10,23 @@ import pytest
 from fleet.export import csv_cell, csv_response
 
 
-@pytest.mark.parametrize("text", ["=1+1", "+cmd", "-/18/13", "@SUM(A1)", "\t=1", "\r=1", "-2+3", "+49 123"])
+FORMULAS = [
+    "=1+1",
+    "+cmd",
+    "-/18/13",
+    "@SUM(A1)",
+    "\t=1",
+    "\r=1",
+    "-2+3",
+    "+49 123",
+    " =1+1",
+    "\n=1",
+    "＝1+1",
+    "＠SUM(A1)",
+]
+
+
+@pytest.mark.parametrize("text", FORMULAS)
 def test_text_that_begins_like_a_formula_gets_an_apostrophe(text: str) -> None:
     assert csv_cell(text) == f"'{text}"
 
