@@ -6,7 +6,7 @@ from alerts.models import Alert, Rule
 from alerts.rules import Kind, OpenFacts, OutlookFacts, ReservoirFacts, RuleFacts
 from fleet.models import Measurand, Reservoir, Standing
 from samples.models import Outlook, Sample
-from samples.outlooks import scale_spec
+from samples.series import scale_spec
 from samples.trends.headroom import headroom
 from samples.trends.standing import Line
 

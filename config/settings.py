@@ -12,6 +12,7 @@ from celery.schedules import crontab
 from csp.constants import NONE, SELF, UNSAFE_INLINE
 from django.core.exceptions import ImproperlyConfigured
 from environs import Env
+from kombu import Queue
 
 django_stubs_ext.monkeypatch()
 
@@ -176,6 +177,9 @@ CELERY_ACCEPT_CONTENT = ["json"]
 CELERY_TASK_ACKS_LATE = True
 CELERY_TASK_REJECT_ON_WORKER_LOST = True
 CELERY_WORKER_PREFETCH_MULTIPLIER = 1
+# Whole fleets go through a queue of their own, so that one saved sample never waits behind them.
+CELERY_TASK_QUEUES = [Queue("celery"), Queue("bulk")]
+CELERY_TASK_ROUTES = {"samples.tasks.refresh_many": {"queue": "bulk"}}
 CELERY_BROKER_CONNECTION_RETRY_ON_STARTUP = True
 CELERY_BROKER_TRANSPORT_OPTIONS = {"visibility_timeout": 900, "socket_connect_timeout": 2, "socket_timeout": 30}
 # Nobody waits at a form for a broker that is down: the sweep finds the row.

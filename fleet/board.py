@@ -21,7 +21,7 @@ SORTS: dict[str, tuple[Any, ...]] = {
     "worst": (F("standing__rank").asc(nulls_last=True), F("standing__room").asc(nulls_last=True)),
     "criticality": (F("criticality").asc(), F("standing__rank").asc(nulls_last=True)),
     "reservoir": (F("machine__name").asc(), F("name").asc()),
-    "code": (F("standing__code_text").desc(nulls_last=True),),
+    "code": (F("standing__code_order").desc(nulls_last=True),),
     "headroom": (F("standing__room").asc(nulls_last=True),),
     "runway": (F("standing__past_since").asc(nulls_last=True), F("standing__runway_early").asc(nulls_last=True)),
     "age": (F("standing__last_drawn_at").asc(nulls_first=True),),

@@ -16,11 +16,11 @@ from samples.figures import ChartPlan, Dot, FanArea, Line, Mark, Step, figure
 from samples.history import History, Reported
 from samples.lines import code_number, figure_key, line_of
 from samples.models import Outlook
-from samples.outlooks import parameters_for, scale_spec, state_of, stretches_of
+from samples.series import parameters_for, scale_at, scale_spec, state_of, stretches_of
 from samples.trends import standing
 from samples.trends.arrays import DAYS_PER_MONTH
 from samples.trends.forecast import fan
-from samples.trends.scales import Scale, ScaleSpec, from_scale
+from samples.trends.scales import Scale, ScaleSpec, from_scale, tidy
 from samples.trends.stretch import EventKind, Family, resets
 
 COUNT_STYLES = {
@@ -71,7 +71,7 @@ def _has_limit(outlook: Outlook | None) -> bool:
 def _count_line(history: History, measurand: Measurand, outlook: Outlook | None, now: datetime) -> Line:
     key, spec = measurand.key, scale_spec(measurand, None)
     colour, symbol = COUNT_STYLES[key]
-    targets, limits = (_steps(history, which, key, now, lambda found: code_number(found, key)) for which in WHICH)
+    targets, limits = (_steps(history, which, key, now, lambda found, _: code_number(found, key)) for which in WHICH)
     stretches = _stretched(history, measurand, lambda reported: _count_dot(history, reported))
     ahead = _fan(history, outlook, spec, now, on_y=True)
     return Line(measurand.symbol, colour, stretches, targets, limits, ahead, symbol)
@@ -90,9 +90,8 @@ def _count_dot(history: History, reported: Reported) -> Dot:
 
 
 def _quantity_chart(history: History, measurand: Measurand, outlook: Outlook | None, now: datetime) -> Chart:
-    charge = history.current_charge
-    spec = scale_spec(measurand, charge.fluid.baseline(measurand.key) if charge else None)
-    targets, limits = (_value_steps(history, which, measurand, spec, now) for which in WHICH)
+    targets, limits = (_value_steps(history, which, measurand, now) for which in WHICH)
+    spec = scale_spec(measurand, outlook.baseline if outlook else None)
     line = Line(
         measurand.symbol,
         PLAIN_COLOUR,
@@ -137,37 +136,40 @@ def _marks(history: History, family: Family) -> list[Mark]:
     ]
 
 
-def _value_steps(history: History, which: Which, measurand: Measurand, spec: ScaleSpec, now: datetime) -> list[Step]:
+def _value_steps(history: History, which: Which, measurand: Measurand, now: datetime) -> list[Step]:
+    """Both sides of a figure in the measurand's own unit, with the new-oil baseline of the oil of its time."""
     return [
         step
         for side in ("high", "low")
-        for step in _steps(history, which, measurand.key, now, partial(_in_unit, measurand, spec, side))
+        for step in _steps(history, which, measurand.key, now, partial(_in_unit, history, measurand, side))
     ]
 
 
-def _in_unit(measurand: Measurand, spec: ScaleSpec, side: str, found: Target | Limit) -> float | None:
-    """One side of a figure in the measurand's own unit."""
+def _in_unit(history: History, measurand: Measurand, side: str, found: Target | Limit, at: datetime) -> float | None:
+    spec = scale_at(history, measurand, at)
     value: float | None = getattr(line_of(found, measurand.key, spec), side)
     if value is None or spec.scale is not Scale.PERCENT:
         return value
-    return float(from_scale(value, spec))
+    return tidy(float(from_scale(value, spec)))
 
 
-def _steps(
-    history: History, which: Which, key: str, now: datetime, value_of: Callable[[Target | Limit], float | None]
-) -> list[Step]:
+ValueOf = Callable[[Target | Limit, datetime], float | None]
+
+
+def _steps(history: History, which: Which, key: str, now: datetime, value_of: ValueOf) -> list[Step]:
     """How a figure stood through the time of the chart: from each dated row to the next of the same measurand."""
     start = history.samples[0].drawn_at if history.samples else now
     end = now + timedelta(days=FAN_MONTHS * DAYS_PER_MONTH)
     wanted = figure_key(key)
     figures: Sequence[Target | Limit] = history.targets if which == "target" else history.limits
     look = history.target_at if which == "target" else history.limit_at
-    moments = sorted({start, *(_day_start(history, found) for found in figures if found.measurand.key == wanted)})
+    turns = [_day_start(history, found) for found in figures if found.measurand.key == wanted]
+    moments = sorted({start, *turns, *(charge.started_at for charge in history.charges)})
     moments = [moment for moment in moments if start <= moment < end]
     steps = []
     for moment, following in zip(moments, [*moments[1:], end], strict=True):
         found = look(wanted, moment)
-        value = None if found is None else value_of(found)
+        value = None if found is None else value_of(found, moment)
         if value is not None:
             steps.append(Step(_local(history, moment), _local(history, following), float(value)))
     return steps

@@ -11,8 +11,8 @@ import numpy as np
 from samples.checks.candidates import Expectation
 from samples.history import History, Reported
 from samples.lines import figure_key, line_of
-from samples.outlooks import day_of, event_marks, filter_together, parameters_for, scale_spec, series_key
 from samples.readings import Reading
+from samples.series import day_of, event_marks, filter_together, parameters_for, scale_at, series_key
 from samples.trends.arrays import DAYS_PER_MONTH
 from samples.trends.forecast import forecast_at
 from samples.trends.level import LevelParameters
@@ -58,27 +58,36 @@ def expectations(history: History, bottle: Bottle, readings: Iterable[Reading]) 
         if reading.value is None or len(series) < FEWEST_EARLIER:
             continue
         earlier = _same_stretch(history, bottle, reading, series)
+        if len(earlier) < FEWEST_EARLIER:
+            earlier = _same_stretch(history, bottle, reading, series, any_laboratory=True)
         if len(earlier) >= FEWEST_EARLIER:
             followed.append(_follow(history, bottle, reading, earlier))
     return _expected(followed, bottle) if followed else []
 
 
-def _same_stretch(history: History, bottle: Bottle, reading: Reading, series: Sequence[Reported]) -> list[Reported]:
-    """Of the accepted results drawn before the new one, those that share a stretch with it."""
-    keys = [series_key(r) for r in series]
-    keys.append((bottle.point_id, bottle.charge_id, bottle.laboratory_id, "", reading.size_scale))
+def _same_stretch(
+    history: History, bottle: Bottle, reading: Reading, series: Sequence[Reported], any_laboratory: bool = False
+) -> list[Reported]:
+    """Of the accepted results drawn before the new one, those that share a stretch with it.
+
+    A laboratory that is new, or not named, has no history of its own here: then those of any laboratory.
+    """
+    keys = [
+        *(series_key(r) for r in series),
+        (bottle.point_id, bottle.charge_id, bottle.laboratory_id, "", reading.size_scale),
+    ]
+    if any_laboratory:
+        keys = [(point, charge, None, "", scale) for point, charge, _, _, scale in keys]
     days = [*(day_of(r.drawn_at) for r in series), day_of(bottle.drawn_at)]
-    stretches = split(
-        days, keys, event_marks(history), Family(series[-1].result.measurand.family), history.reservoir.volume_l
-    )
+    family = Family(series[-1].result.measurand.family)
+    stretches = split(days, keys, event_marks(history), family, history.reservoir.volume_l)
     mine = next(stretch for stretch in stretches if len(series) in stretch.positions)
     return [series[position] for position in mine.positions if position < len(series)]
 
 
 def _follow(history: History, bottle: Bottle, reading: Reading, earlier: Sequence[Reported]) -> _Follow:
     measurand = earlier[-1].result.measurand
-    charge = history.charge_at(bottle.drawn_at)
-    spec = scale_spec(measurand, charge.fluid.baseline(measurand.key) if charge else None)
+    spec = scale_at(history, measurand, bottle.drawn_at)
     limit = line_of(history.limit_at(figure_key(measurand.key), bottle.drawn_at), measurand.key, spec)
     return _Follow(reading, earlier, spec, parameters_for(measurand, spec, limit).parameters)
 

@@ -40,7 +40,9 @@ class History:
 
     @cached_property
     def accepted(self) -> list[Sample]:
-        return [sample for sample in self.samples if sample.verdict == Sample.Verdict.ACCEPTED]
+        """What speaks for the oil in the reservoir: not in doubt, not set aside, and not new oil from its drum."""
+        accepted = [sample for sample in self.samples if sample.verdict == Sample.Verdict.ACCEPTED]
+        return [sample for sample in accepted if sample.reason != Sample.Reason.NEW_OIL]
 
     @cached_property
     def measurands(self) -> list[Measurand]:

@@ -12,8 +12,9 @@ from fleet.wording import signed
 from samples.history import History
 from samples.lines import code_number, figure_key, line_of
 from samples.models import Result, Sample
-from samples.outlooks import WORDS, scale_spec
+from samples.outlooks import WORDS
 from samples.sample_codes import number_of
+from samples.series import scale_spec
 from samples.tables import cell_text
 from samples.trends.standing import known_range, stand
 

@@ -6,7 +6,7 @@ from typing import Final, Protocol
 
 from fleet.codes import ScaleNumber, parse_target_code
 from samples.coding.iso4406 import bounds_per_ml
-from samples.trends.scales import Scale, ScaleSpec
+from samples.trends.scales import Scale, ScaleSpec, tidy
 from samples.trends.standing import Line
 
 CODE_KEY: Final = "iso4406"
@@ -71,11 +71,12 @@ def _side(side: float | None, basis: str, spec: ScaleSpec) -> float | None:
         return _absolute(side, spec)
     if spec.baseline is None:
         return None
-    percent = side if basis == "percent" else 100.0 * side / spec.baseline
-    return percent if spec.scale is Scale.PERCENT else spec.baseline * (1.0 + percent / 100.0)
+    if spec.scale is not Scale.PERCENT:
+        return tidy(spec.baseline * (1.0 + side / 100.0) if basis == "percent" else spec.baseline + side)
+    return side if basis == "percent" else tidy(100.0 * side / spec.baseline)
 
 
 def _absolute(side: float, spec: ScaleSpec) -> float | None:
     if spec.scale is not Scale.PERCENT:
         return side
-    return None if spec.baseline is None else 100.0 * (side / spec.baseline - 1.0)
+    return None if spec.baseline is None else tidy(100.0 * (side / spec.baseline - 1.0))

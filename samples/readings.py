@@ -4,7 +4,6 @@ Canonical units: counts in particles per mL, water and elements in mg/kg, viscos
 mg KOH/g, oil temperature in °C. A reading has either a value or an interval (low, high], never a guess inside it.
 """
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from decimal import Decimal
 from typing import Final, Literal
@@ -27,6 +26,8 @@ CANONICAL_UNITS: Final[dict[str, str]] = {
     "oil_temperature": "°C",
 }
 BASIS_UNITS: Final[dict[Basis, str]] = {"per_ml": "1/mL", "per_100ml": "1/100 mL"}
+
+BEYOND_THE_TABLE: Final = ScaleNumber(28, ">")
 
 # What one reported unit is worth in the canonical one: reported × factor.
 _FACTORS: Final[dict[str, dict[str, Decimal]]] = {
@@ -182,8 +183,8 @@ def readings_from_counts(
 def readings_from_code(code: IsoCode, *, microscope: bool | None = None) -> list[Reading]:
     """Readings of a code without counts: an interval (low, high] of particles per mL a size, never a middle value.
 
-    ``≥7`` is open above, ``>28`` too. ``*`` (too many to count) is at least what the next larger size proves, and open
-    above. ``microscope=None``: a code that begins with a dash is read as 5 and 15 µm under the microscope (ISO 4406
+    ``≥7`` is open above, ``>28`` too. ``*`` (too many to count) counts as beyond the table.
+    ``microscope=None``: a code that begins with a dash is read as 5 and 15 µm under the microscope (ISO 4406
     writes those so); pass False where the laboratory's counter left out 4 µm.
     """
     by_microscope = code.is_two_number if microscope is None else microscope
@@ -193,7 +194,7 @@ def readings_from_code(code: IsoCode, *, microscope: bool | None = None) -> list
         size = code.sizes[place]
         if measurand is None or not size.is_measured:
             continue
-        low, high = _code_interval(size, code.sizes[place + 1 :])
+        low, high = _code_interval(size)
         readings.append(
             Reading(
                 measurand=measurand,
@@ -225,10 +226,9 @@ def _code_qualifier(size: ScaleNumber) -> Qualifier:
     return ">" if size.mark in (">", "*") else ""
 
 
-def _code_interval(size: ScaleNumber, smaller_counts: Sequence[ScaleNumber]) -> tuple[float, float | None]:
-    if size.number is not None:
-        return bounds_per_ml(size)
-    return next((bounds_per_ml(other)[0] for other in smaller_counts if other.number is not None), 0.0), None
+def _code_interval(size: ScaleNumber) -> tuple[float, float | None]:
+    """Too many to count is beyond the table, as ``>28`` is."""
+    return bounds_per_ml(BEYOND_THE_TABLE if size.number is None else size)
 
 
 def _by_density(value: Decimal, density_kg_per_l: Decimal | None) -> Decimal:

@@ -13,7 +13,8 @@ from fleet.wording import headroom_text
 from samples.history import History
 from samples.lines import CODE_KEY
 from samples.models import Outlook, Sample
-from samples.sample_codes import code_text
+from samples.sample_codes import code_of
+from samples.series import figures_of
 from samples.trends.scales import observe
 
 if TYPE_CHECKING:
@@ -40,7 +41,7 @@ SHOWN_VALUES = 12
 
 def standing_facts(history: History, computed: Sequence[Computed], now: datetime) -> dict[str, Any]:
     """The fields of the Standing row, without its bookkeeping."""
-    judged = [one for one in computed if is_judged(one.row)]
+    judged = _of_newest_bottle([one for one in computed if is_judged(one.row)])
     worst = min(judged, key=_badness, default=None)
     word = StandingWord(worst.row.word) if worst else _unjudged_word(history, now)
     return {
@@ -50,6 +51,17 @@ def standing_facts(history: History, computed: Sequence[Computed], now: datetime
         **_worst_facts(worst),
         **_runway_facts([one.row for one in judged]),
     }
+
+
+def _of_newest_bottle(judged: Sequence[Computed]) -> list[Computed]:
+    """Only the newest bottle speaks for dirt: a microscope count from before the counter came says no more."""
+    counted = [one.current[-1].drawn_at for one in judged if one.current and one.measurand.family == "dirt"]
+    newest = max(counted, default=None)
+    return [
+        one
+        for one in judged
+        if one.measurand.family != "dirt" or newest is None or (one.current and one.current[-1].drawn_at == newest)
+    ]
 
 
 def is_judged(outlook: Outlook) -> bool:
@@ -77,26 +89,29 @@ def _unjudged_word(history: History, now: datetime) -> StandingWord:
 
 
 def _sample_facts(history: History, now: datetime) -> dict[str, Any]:
-    coded = [sample for sample in history.accepted if code_text(sample.current_results)]
-    judged_at = coded[-1].drawn_at if coded else now
-    target, limit = history.target_at(CODE_KEY, judged_at), history.limit_at(CODE_KEY, judged_at)
-    drawn = [sample for sample in history.samples if sample.verdict != Sample.Verdict.SET_ASIDE]
-    last = drawn[-1].drawn_at if drawn else None
+    charge = history.charge_at(now)
+    of_this_oil = [s for s in history.accepted if charge is None or s.charge_id == charge.pk]
+    coded = [sample for sample in of_this_oil if code_of(sample.current_results)]
+    code = code_of(coded[-1].current_results) if coded else None
+    figures = figures_of(history, CODE_KEY, coded[-1].drawn_at if coded else now, now)
+    last = history.latest.drawn_at if history.latest else None
     return {
-        "code_text": code_text(coded[-1].current_results) if coded else "",
-        "target_text": target.text if target else "",
-        "limit_text": limit.text if limit else "",
+        "code_text": str(code) if code else "",
+        "code_order": [-1 if size.rank is None else size.rank for size in code.sizes] if code else [],
+        "target_text": figures.target.text if figures.target else "",
+        "limit_text": figures.limit.text if figures.limit else "",
         "last_drawn_at": last,
         "next_due_at": _next_due(history, last),
         "in_doubt": sum(sample.verdict == Sample.Verdict.IN_DOUBT for sample in history.samples),
     }
 
 
-def _next_due(history: History, last: datetime | None) -> datetime | None:
-    """One interval after the last bottle; after the filling where none was drawn yet."""
+def _next_due(history: History, last: datetime | None) -> datetime:
+    """One interval after the last sample that counts; where there is none, after the filling and the registration."""
     if last is None:
         charge = history.current_charge
-        return history.reservoir.next_planned(charge.started_at) if charge else None
+        begun = history.reservoir.registered_at
+        last = max(begun, charge.started_at) if charge else begun
     return history.reservoir.next_planned(last)
 
 

@@ -104,7 +104,8 @@ def slope_text(outlook: Outlook) -> str:
     """The Theil–Sen slope with its 90 % interval, on the measurand's scale per month; empty when too few."""
     if outlook.slope is None or outlook.slope_low is None or outlook.slope_high is None:
         return ""
-    unit = {"count": "code steps", "log": "doublings", "percent": "% of new", "linear": outlook.measurand.unit}
+    percent = "% of new" if outlook.baseline else outlook.measurand.unit
+    unit = {"count": "code steps", "log": "doublings", "percent": percent, "linear": outlook.measurand.unit}
     return (
         f"{outlook.slope:+.2f} {unit[outlook.measurand.scale]} a month "
         f"({outlook.slope_low:+.2f} to {outlook.slope_high:+.2f}, 90 %)"

@@ -79,7 +79,8 @@ class Worker(CeleryProcess):
 
     def idle(self) -> bool:
         """No message waits and none is being worked on (they are acknowledged late)."""
-        return not self.broker.llen("celery") and not self.broker.hlen("unacked")
+        waiting = self.broker.llen("celery") or self.broker.llen("bulk")
+        return not waiting and not self.broker.hlen("unacked")
 
     def wait_idle(self, timeout: float = 15.0) -> None:
         self.wait_until(self.idle, timeout)

@@ -4,6 +4,7 @@ from datetime import datetime, timedelta
 
 from django.core.validators import MinValueValidator, RegexValidator
 from django.db import models
+from django.utils import timezone
 
 from fleet.models.oil import OilCharge
 from fleet.models.places import Area, Machine
@@ -60,6 +61,7 @@ class Reservoir(models.Model):
     next_stop_on = models.DateField("next planned stop", null=True, blank=True)
     retired_on = models.DateField(null=True, blank=True)
     notes = models.TextField(blank=True)
+    registered_at = models.DateTimeField(default=timezone.now, editable=False)
 
     objects = ReservoirQuerySet.as_manager()
 

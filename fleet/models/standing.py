@@ -39,6 +39,7 @@ class Standing(models.Model):
     worst = models.ForeignKey(Measurand, on_delete=models.SET_NULL, null=True, related_name="+")
     because = models.CharField(max_length=240, blank=True, help_text="One sentence: which figure spoke.")
     code_text = models.CharField(max_length=24, blank=True)
+    code_order = ArrayField(models.SmallIntegerField(), default=list, help_text="The code's numbers, to sort by.")
     target_text = models.CharField(max_length=24, blank=True)
     limit_text = models.CharField(max_length=24, blank=True)
     last_drawn_at = models.DateTimeField(null=True)

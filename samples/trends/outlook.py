@@ -35,6 +35,7 @@ class Refusal(StrEnum):
     IN_DOUBT = "in_doubt"
     NO_LIMIT = "no_limit"
     UNKNOWN_UNITS = "unknown_units"
+    RESTARTED = "restarted"
 
 
 class RunwayState(StrEnum):
@@ -69,7 +70,8 @@ class OutlookQuestion:
     `as_of_day` is today. `interval_days` is the sampling interval, `next_day` the next planned sample, None where
     none is planned. `noise` (y) widens a value before it is judged against a line. `units_known` False: unit or size
     scale of the results is not known, so nothing is worked out. `parameters_name` says which fit or starting values
-    are used.
+    are used. `ahead`: the limit that will hold, where it is not the one the latest sample is judged by. `refuse`: a
+    reason for no forecast that lies outside the stretch (a doubtful sample after it, an event since).
     """
 
     spec: ScaleSpec
@@ -82,6 +84,13 @@ class OutlookQuestion:
     next_day: float | None = None
     noise: float = 0.0
     units_known: bool = True
+    ahead: Line | None = None
+    refuse: Refusal | None = None
+
+    @property
+    def coming(self) -> Line:
+        """The limit that a forecast is held against."""
+        return self.ahead if self.ahead is not None and self.ahead.is_set else self.limit
 
 
 @dataclass(frozen=True)
@@ -177,7 +186,9 @@ def _refusal(results: StretchResults, question: OutlookQuestion) -> Refusal | No
         return Refusal.IN_DOUBT
     if is_stale(float(results.days[-1]), question):
         return Refusal.TOO_OLD
-    return None if question.limit.is_set else Refusal.NO_LIMIT
+    if question.refuse is not None:
+        return question.refuse
+    return None if question.coming.is_set else Refusal.NO_LIMIT
 
 
 def _sentence(refusal: Refusal, results: StretchResults, question: OutlookQuestion) -> str:
@@ -188,6 +199,7 @@ def _sentence(refusal: Refusal, results: StretchResults, question: OutlookQuesti
         Refusal.NO_SAMPLE: "There is no sample since the trend last restarted.",
         Refusal.IN_DOUBT: "The latest result is in doubt until someone accepts it or sets it aside.",
         Refusal.NO_LIMIT: "No limit is set.",
+        Refusal.RESTARTED: "The trend restarted after the latest sample, and there is none since.",
         Refusal.UNKNOWN_UNITS: "The unit or the size scale of the results is not known.",
     }[refusal]
 
@@ -249,7 +261,7 @@ def _with_next_sample(numbers: OutlookNumbers, today: LevelState, question: Outl
     day = _next_day(numbers, question)
     if day is None:
         return numbers
-    months, limits = _months(day - question.as_of_day), sides(question.limit)
+    months, limits = _months(day - question.as_of_day), sides(question.coming)
     low, high = (float(edge[0]) for edge in band(forecast_at(today, months, question.parameters, sample=True)))
     chance = sum(
         float(chance_past(today, figure_to_y(figure, question.spec), months, side, question.parameters)[0])
@@ -304,7 +316,7 @@ def _with_runway(
 def _nearest_runway(today: LevelState, question: OutlookQuestion) -> Runway:
     found = [
         runway(today, figure_to_y(figure, question.spec), side, question.parameters)
-        for side, figure in sides(question.limit)
+        for side, figure in sides(question.coming)
     ]
     return nearer(found[0], found[1])[0] if len(found) == 2 else found[0]
 

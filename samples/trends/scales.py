@@ -100,7 +100,15 @@ def y_to_figure(y: ArrayLike, spec: ScaleSpec) -> FloatArray:
 
 def value_to_figure(value: float, spec: ScaleSpec) -> float:
     """A result in its own unit to the numbers that targets and limits are written in."""
-    return float(to_scale(value, spec)) if spec.scale is Scale.PERCENT else value
+    return tidy(float(to_scale(value, spec))) if spec.scale is Scale.PERCENT else value
+
+
+def tidy(figure: float) -> float:
+    """The figure without the last digits of binary arithmetic, so that 50.6 on a new oil of 46 is +10 % and not more.
+
+    Nine significant digits; a laboratory reports four at most.
+    """
+    return float(f"{figure:.9g}")
 
 
 def observe(

@@ -5,7 +5,7 @@ from dataclasses import dataclass
 from enum import StrEnum
 from math import inf, isfinite, isnan
 
-from samples.trends.scales import ScaleSpec, figure_to_y, value_to_figure, y_to_figure
+from samples.trends.scales import Scale, ScaleSpec, figure_to_y, value_to_figure, y_to_figure
 
 
 class Standing(StrEnum):
@@ -60,7 +60,8 @@ def known_range(value: float, low: float, high: float, qualifier: str, spec: Sca
         return _qualified(value_to_figure(value, spec), qualifier)
     bottom = -inf if isnan(low) else value_to_figure(low, spec)
     top = inf if isnan(high) or qualifier in {"≥", ">"} else value_to_figure(high, spec)
-    return Known(bottom, top, above_low=True)
+    # A code's number begins above its lower bound; a quantity reported as "≥ 500" may be 500.
+    return Known(bottom, top, above_low=spec.scale is Scale.COUNT or qualifier != "≥")
 
 
 def passed(known: Known, line: Line) -> Passed:
@@ -86,16 +87,16 @@ def widen(known: Known, noise: float, spec: ScaleSpec) -> Known:
 
 def stand(known: Known, target: Line, limit: Line) -> Standing:
     """The standing of a current value. Without a target the limit alone is judged; with neither it cannot be told."""
-    if passed(known, limit) is Passed.YES:
+    at_limit = passed(known, limit)
+    if at_limit is Passed.YES:
         return Standing.PAST_LIMIT
     judged = target if target.is_set else limit
     if not judged.is_set:
         return Standing.CANNOT_TELL
-    return {
-        Passed.YES: Standing.OVER_TARGET,
-        Passed.UNSURE: Standing.CANNOT_TELL,
-        Passed.NO: Standing.WITHIN,
-    }[passed(known, judged)]
+    at_target = passed(known, judged)
+    if at_target is Passed.YES:
+        return Standing.OVER_TARGET
+    return Standing.CANNOT_TELL if Passed.UNSURE in (at_target, at_limit) else Standing.WITHIN
 
 
 def worst(standings: Iterable[Standing]) -> Standing:

@@ -95,8 +95,8 @@ def split(
     """All stretches of one reservoir's measurand, in the order in which they begin.
 
     `days`: when each sample was drawn, shape (n,), in any order. `keys`: what must be equal inside a stretch (sample
-    point, oil charge, laboratory, method, size scale). A sample drawn at the moment of an event is of the oil before
-    it.
+    point, oil charge, laboratory, method, size scale). A sample drawn at the moment of an event is of the oil after it,
+    as an oil charge begins with its first moment.
     """
     drawn = np.asarray(days, dtype=np.float64)
     order = np.argsort(drawn, kind="stable")
@@ -112,8 +112,8 @@ def split(
 
 
 def segment_numbers(days: FloatArray, reset_days: FloatArray) -> IntArray:
-    """How many of the sorted `reset_days` came before each sample, shape (n,); equal numbers may share a trend."""
-    return np.searchsorted(reset_days, days, side="left").astype(np.int64)
+    """How many of the sorted `reset_days` came before each sample or with it, shape (n,); equal ones share a trend."""
+    return np.searchsorted(reset_days, days, side="right").astype(np.int64)
 
 
 def latest(stretches: Sequence[Stretch], days: ArrayLike) -> Stretch | None:

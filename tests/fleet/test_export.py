@@ -9,7 +9,6 @@ import pytest
 
 from fleet.export import csv_cell, csv_response
 
-
 FORMULAS = [
     "=1+1",
     "+cmd",

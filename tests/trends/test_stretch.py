@@ -58,10 +58,10 @@ def test_samples_in_any_order_come_out_in_order_of_drawing() -> None:
     assert only.positions.tolist() == [1, 2, 0]
 
 
-def test_a_sample_drawn_with_the_event_is_of_the_oil_before_it() -> None:
+def test_a_sample_drawn_with_the_event_is_of_the_oil_after_it() -> None:
     events = [EventMark(20.0, EventKind.OIL_CHANGE)]
     before, after = split([10.0, 20.0, 20.5], ["A"] * 3, events, Family.DIRT, None)
-    assert (before.positions.tolist(), after.positions.tolist()) == ([0, 1], [2])
+    assert (before.positions.tolist(), after.positions.tolist()) == ([0], [1, 2])
 
 
 def test_the_current_stretch_is_that_of_the_latest_sample() -> None:
@@ -73,4 +73,4 @@ def test_the_current_stretch_is_that_of_the_latest_sample() -> None:
 
 
 def test_segments_of_many_samples_are_counted_at_once() -> None:
-    assert segment_numbers(np.array([1.0, 5.0, 5.1, 9.0]), np.array([5.0, 9.0])).tolist() == [0, 0, 1, 1]
+    assert segment_numbers(np.array([1.0, 5.0, 5.1, 9.0]), np.array([5.0, 9.0])).tolist() == [0, 1, 1, 2]

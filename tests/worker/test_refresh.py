@@ -69,7 +69,7 @@ def test_a_change_that_is_rolled_back_asks_for_nothing(worker: Worker) -> None:
 
 def test_a_worker_killed_in_the_middle_of_a_refresh_leaves_it_to_the_sweep(worker: Worker) -> None:
     made = sampled()
-    Standing.objects.create(reservoir=made, wanted_at=timezone.now())
+    Standing.objects.create(reservoir=made, wanted_at=timezone.now() - timedelta(minutes=1))
     with held(made):
         app.send_task("samples.tasks.refresh_outlook", args=[made.pk])
         worker.wait_until(waits_for_the_row)
