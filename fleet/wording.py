@@ -26,7 +26,25 @@ def signed(value: float, decimals: int = 1) -> str:
     """+1.2, −0.6 or 0.0, with a true minus and never a minus before nothing."""
     rounded = round(value, decimals)
     sign = "+" if rounded > 0 else MINUS if rounded < 0 else ""
-    return f"{sign}{abs(rounded):.{decimals}f}"
+    return f"{sign}{abs(rounded):,.{decimals}f}"
+
+
+def number_text(value: float, decimals: int = 1) -> str:
+    """With thousands apart, never in powers of ten, and without decimals that a figure of that size does not have.
+
+    >>> number_text(1740.0), number_text(63.04), number_text(10000.0), number_text(0.64, 0)
+    ('1,740', '63.0', '10,000', '0.64')
+    """
+    if abs(value) >= 100:
+        return f"{value:,.0f}"
+    if decimals == 0 and value != round(value):
+        return f"{value:.3g}"
+    return f"{value:.{decimals}f}"
+
+
+def bound_text(value: float) -> str:
+    """A bound as short as it can be written: 0.64, 20, 10,000."""
+    return f"{value:,.0f}" if abs(value) >= 100 or value == round(value) else f"{value:g}"
 
 
 def headroom_text(headroom: float | None, unit: str) -> str:
@@ -82,7 +100,7 @@ def _dated_text(outlook: HasRunway, as_of: datetime) -> str:
     if median is None:
         return f"{span_text(early or 0)} at the earliest" if early else "any day at the earliest"
     long = median > LONG_DAYS
-    low = _end(early, long) if early is not None else "now"
+    low = _end(early, long) if early else "now"
     high = _end(late, long) if late is not None else BEYOND
     return f"{span_text(median)} ({low} – {high})"
 

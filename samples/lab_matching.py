@@ -34,7 +34,7 @@ class Names:
             if distinct:
                 return next(iter(distinct.values()))
         if name in self.by_alias:
-            said = f"“{text[:60]}” was another name of a reservoir, but not on {day.isoformat()}. Write the tag."
+            said = f"“{text[:60]}” was another name of a reservoir, but not on {day:%-d %b %Y}. Write the tag."
             return Problem("reservoir_name_lapsed", said)
         said = f"No reservoir is called “{text[:60]}”. Write its tag, or give it this other name in the register."
         return Problem("reservoir_unknown", said)

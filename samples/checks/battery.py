@@ -16,6 +16,7 @@ from samples.checks.timing import (
     drawn_after_cleaning,
     drawn_before_the_charge,
     drawn_in_the_future,
+    drawn_twice_a_day,
     hours_backwards,
     hours_faster_than_the_clock,
 )
@@ -33,6 +34,7 @@ def run_checks(
     events: Sequence[PastEvent] = (),
     expectations: Sequence[Expectation] = (),
     charge_began: datetime | None = None,
+    same_point: Sequence[PastSample] = (),
 ) -> list[Doubt]:
     """Every doubt about a sample; none is a rejection.
 
@@ -41,6 +43,7 @@ def run_checks(
         events: what was done to the reservoir's oil.
         expectations: one a measurand that was forecast.
         charge_began: when the oil in the reservoir was filled in; None where not known.
+        same_point: all samples of the same point that are not set aside, also those in doubt and those drawn later.
 
     A hundredfold shift is told instead of "all counts moved" and "far off" for the counts, since it brings both along.
     """
@@ -55,6 +58,7 @@ def run_checks(
         copy_of_the_last(candidate, history),
         hours_backwards(candidate, history),
         hours_faster_than_the_clock(candidate, history),
+        drawn_twice_a_day(candidate, same_point),
         drawn_before_the_charge(candidate, charge_began),
         drawn_after_cleaning(candidate, events),
     )

@@ -9,7 +9,7 @@ from dataclasses import dataclass, field
 from datetime import datetime
 from typing import Final
 
-from fleet.codes import IsoCode
+from fleet.codes import LARGEST_NUMBER, IsoCode, ScaleNumber
 from samples.coding.iso4406 import code_scale
 from samples.readings import COUNTER_SIZES, MICROSCOPE_SIZES
 
@@ -27,13 +27,17 @@ class Doubt:
 
 @dataclass(frozen=True, slots=True)
 class CandidateSample:
-    """The sample at hand. ``counted_ml`` [mL] is the volume the counts were made on, where known."""
+    """The sample at hand. ``counted_ml`` [mL] is the volume the counts were made on, where known.
+
+    ``reason`` is why it was drawn, as the sample record names it: "routine", "resample", "after_correction", ….
+    """
 
     drawn_at: datetime
     values: Mapping[str, float] = field(default_factory=dict)
     code: IsoCode | None = None
     counted_ml: float | None = None
     machine_hours: float | None = None
+    reason: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,6 +73,11 @@ class Expectation:
     scale: float | None
 
 
+def day_of(moment: datetime) -> str:
+    """A day as people read it: 9 Nov 2026."""
+    return f"{moment:%-d %b %Y}"
+
+
 def latest_before(drawn_at: datetime, history: Sequence[PastSample]) -> PastSample | None:
     """The last sample of ``history`` drawn before ``drawn_at``, whatever the order of ``history``."""
     earlier = [past for past in history if past.drawn_at < drawn_at]
@@ -76,7 +85,10 @@ def latest_before(drawn_at: datetime, history: Sequence[PastSample]) -> PastSamp
 
 
 def count_places(sample: CandidateSample | PastSample) -> dict[str, float]:
-    """Place of each count on the continuous code scale [code steps]; of a code without counts its middle."""
+    """Place of each count on the continuous code scale [code steps]; of a code without counts its middle.
+
+    In a code, ``>28`` and ``*`` stand where 29 would, and ``≥n`` where n does.
+    """
     places = {size: code_scale(sample.values[size]) for size in SIZE_LABELS if size in sample.values}
     return places or _code_places(sample.code)
 
@@ -98,7 +110,14 @@ def _code_places(code: IsoCode | None) -> dict[str, float]:
         return {}
     names = ("", *MICROSCOPE_SIZES) if code.is_two_number else COUNTER_SIZES
     return {
-        name: size.number - 0.5
+        name: number - 0.5
         for name, size in zip(names, code.sizes, strict=True)
-        if size.number is not None and size.mark == ""
+        if name and (number := _least_number(size)) is not None
     }
+
+
+def _least_number(size: ScaleNumber) -> int | None:
+    """The scale number that stands for one place of a code: beyond the table and too many to count are the next one."""
+    if size.mark in (">", "*"):
+        return LARGEST_NUMBER + 1
+    return size.number

@@ -6,7 +6,15 @@ from math import log2
 from typing import Final
 
 from fleet.codes import CodeError, IsoCode
-from samples.checks.candidates import SIZE_LABELS, CandidateSample, Doubt, PastSample, latest_before, steps_moved
+from samples.checks.candidates import (
+    SIZE_LABELS,
+    CandidateSample,
+    Doubt,
+    PastSample,
+    day_of,
+    latest_before,
+    steps_moved,
+)
 from samples.coding.iso4406 import code_from_counts
 from samples.readings import COUNTER_SIZES, ELEMENTS, MICROSCOPE_SIZES
 
@@ -85,7 +93,7 @@ def copy_of_the_last(candidate: CandidateSample, history: Sequence[PastSample]) 
         return None
     return Doubt(
         "copy_of_the_last",
-        f"All {len(shared)} values are the same as in the sample of {previous.drawn_at.date().isoformat()}.",
+        f"All {len(shared)} values are the same as in the sample of {day_of(previous.drawn_at)}.",
         "Compare with the laboratory's report: the figures may be those of the sample before.",
     )
 

@@ -170,7 +170,7 @@ def _drawn(row: _Row, as_of: datetime) -> tuple[date | None, time | None]:
         row.object("drawn_time", clock.problem)
     at = drawn.at or clock.at
     if drawn.day is not None and (drawn.day, at or time.min) > (as_of.date(), as_of.time()):
-        reason = f"The sample is dated after today ({as_of.date().isoformat()}). Check the date."
+        reason = f"The sample is dated after today ({as_of:%-d %b %Y}). Check the date."
         row.object("drawn", Problem("drawn_in_future", reason))
     return drawn.day, at
 

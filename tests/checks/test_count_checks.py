@@ -114,7 +114,7 @@ def test_a_rise_together_with_metals_is_taken_as_real() -> None:
 def test_the_same_digits_as_last_time_are_doubted() -> None:
     doubt = copy_of_the_last(candidate({**USUAL, "fe": 0.0}), past({**USUAL, "fe": 0.0}))
     assert doubt is not None
-    assert "2026-10-12" in doubt.sentence
+    assert "12 Oct 2026" in doubt.sentence
 
 
 @pytest.mark.parametrize("before", [{**USUAL, "p14": 7.2}, {"p4": 391.2, "p6": 96.1}, {}])
@@ -125,3 +125,14 @@ def test_one_other_digit_or_too_few_values_are_no_copy(before: dict[str, float])
 def test_zeros_alone_are_no_copy() -> None:
     metals = {"fe": 0.0, "cu": 0.0, "pb": 0.0}
     assert copy_of_the_last(candidate(metals), past(metals)) is None
+
+
+@pytest.mark.parametrize("code", [">28/22/18", "*/22/18", "≥22/22/≥18"])
+def test_a_code_beyond_the_table_or_with_few_particles_counts_as_a_move(code: str) -> None:
+    doubt = all_counts_moved(candidate({}, code), past({}, "18/16/13"))
+    assert doubt is not None
+    assert "rose" in doubt.sentence
+
+
+def test_the_same_code_beyond_the_table_has_not_moved() -> None:
+    assert all_counts_moved(candidate({}, ">28/22/18"), past({}, ">28/22/18")) is None

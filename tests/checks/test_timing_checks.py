@@ -1,5 +1,6 @@
 """Doubts about dates and hours."""
 
+from dataclasses import replace
 from datetime import UTC, datetime, timedelta
 
 import pytest
@@ -9,6 +10,7 @@ from samples.checks.timing import (
     drawn_after_cleaning,
     drawn_before_the_charge,
     drawn_in_the_future,
+    drawn_twice_a_day,
     hours_backwards,
     hours_faster_than_the_clock,
 )
@@ -81,3 +83,41 @@ def test_without_hours_or_history_there_is_nothing_to_doubt() -> None:
         assert hours_backwards(SAMPLE, history) is None
         assert hours_faster_than_the_clock(SAMPLE, history) is None
     assert hours_backwards(CandidateSample(DRAWN), [past(18_500)]) is None
+
+
+@pytest.mark.parametrize("hours", [-7, -0.1, 0, 0.1, 11.9])
+def test_another_sample_of_the_day_or_of_half_a_day_is_doubted(hours: float) -> None:
+    doubt = drawn_twice_a_day(SAMPLE, [past(None), past(None, DRAWN + timedelta(hours=hours))])
+    assert doubt is not None
+    assert doubt.code == "same_day"
+    assert "reason" in doubt.settles
+
+
+def test_a_sample_of_the_night_before_is_told_as_such() -> None:
+    doubt = drawn_twice_a_day(SAMPLE, [past(None, DRAWN - timedelta(hours=8))])
+    assert doubt is not None
+    assert doubt.sentence == "Another sample of this point was drawn less than 12 hours before, on 8 Nov 2026."
+
+
+@pytest.mark.parametrize("hours", [-12, 17])
+def test_a_sample_of_another_day_and_half_a_day_away_is_fine(hours: float) -> None:
+    assert drawn_twice_a_day(SAMPLE, [past(None, DRAWN + timedelta(hours=hours))]) is None
+
+
+@pytest.mark.parametrize("reason", ["resample", "after_correction", "after_repair", "new_oil"])
+def test_a_reason_to_draw_again_settles_it_beforehand(reason: str) -> None:
+    assert drawn_twice_a_day(replace(SAMPLE, reason=reason), [past(None, DRAWN)]) is None
+
+
+@pytest.mark.parametrize(
+    ("reason", "doubted"),
+    [("after_correction", False), ("after_repair", False), ("new_oil", False), ("resample", True), ("routine", True)],
+)
+def test_a_sample_drawn_to_show_the_cleaning_is_not_doubted_for_it(reason: str, doubted: bool) -> None:
+    assert (drawn_after_cleaning(replace(SAMPLE, reason=reason), cleaning(1)) is not None) is doubted
+
+
+def test_days_are_told_as_people_write_them() -> None:
+    doubt = drawn_before_the_charge(SAMPLE, DRAWN + timedelta(days=10))
+    assert doubt is not None
+    assert doubt.sentence == "The sample was drawn on 9 Nov 2026, before this oil was filled in (19 Nov 2026)."

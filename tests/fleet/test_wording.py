@@ -19,7 +19,8 @@ def runway(state: str = "dated", **days: float | None) -> SimpleNamespace:
 
 
 @pytest.mark.parametrize(
-    ("value", "text"), [(0.3, "+0.3"), (-2.4, "−2.4"), (-0.04, "0.0"), (0.0, "0.0"), (1.25, "+1.2")]
+    ("value", "text"),
+    [(0.3, "+0.3"), (-2.4, "−2.4"), (-0.04, "0.0"), (0.0, "0.0"), (1.25, "+1.2"), (8955.04, "+8,955.0")],
 )
 def test_a_distance_carries_its_sign_and_never_a_minus_before_nothing(value: float, text: str) -> None:
     assert signed(value) == text

@@ -211,7 +211,7 @@ def test_another_name_counts_only_in_its_span_of_days(client: Client, press: Res
     good = choose(client, lab_file("unit 7  hyd;2026-04-30;;;;2178;847;63;25"))
     late = choose(client, lab_file("UNIT 7 HYD;2026-05-01;;;;2178;847;63;25"))
     assert good.context["check"].is_good
-    assert "but not on 2026-05-01" in reasons(late)[0]
+    assert "but not on 1 May 2026" in reasons(late)[0]
 
 
 def test_machine_and_reservoir_together_are_a_name(client: Client) -> None:

@@ -77,7 +77,7 @@ def _lines(check: FileCheck) -> list[str]:
 def _row_lines(row: RowVerdict) -> list[str]:
     if row.state == RowState.WRONG:
         return [f"line {row.line}: wrong: {_cell(cell.column, cell.value)}{cell.reason}" for cell in row.problems]
-    where = f"{row.reservoir}, {row.drawn_at:%Y-%m-%d}, {row.code or 'no code'}"
+    where = f"{row.reservoir}, {row.drawn_at:%-d %b %Y}, {row.code or 'no code'}"
     lines = [f"line {row.line}: {row.state}: {where}. {row.remark}".rstrip()]
     lines += [f"line {row.line}:   doubt: {doubt.sentence} {doubt.settles}" for doubt in row.doubts]
     return lines + [f"line {row.line}:   left out: {_cell(cell.column, cell.value)}{cell.reason}" for cell in row.notes]
