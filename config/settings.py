@@ -223,6 +223,8 @@ LOGGING = {
     "version": 1,
     "disable_existing_loggers": False,
     "handlers": {"console": {"class": "logging.StreamHandler"}},
+    # A refused page is an answer, not a fault.
+    "loggers": {"django.request": {"level": "ERROR"}},
     "root": {"handlers": ["console"], "level": env.str("SILTWATCH_LOG_LEVEL", "INFO")},
 }
 

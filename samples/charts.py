@@ -11,6 +11,7 @@ from typing import Any, Literal
 import numpy as np
 
 from fleet.models import Limit, Measurand, RunwayState, Target
+from fleet.wording import number_text
 from samples.coding.iso4406 import code_scale
 from samples.figures import ChartPlan, Dot, FanArea, Line, Mark, Step, figure
 from samples.history import History, Reported
@@ -82,7 +83,7 @@ def _count_dot(history: History, reported: Reported) -> Dot:
     result, at = reported.result, _local(history, reported.drawn_at)
     doubtful = reported.sample.verdict != "accepted"
     if result.value is not None:
-        return Dot(at, code_scale(result.value), f"{result.value:,.4g} per mL", in_doubt=doubtful)
+        return Dot(at, code_scale(result.value), f"{number_text(result.value)} per mL", in_doubt=doubtful)
     high = None if result.high is None else float(round(code_scale(result.high)))
     low = None if result.low is None else float(round(code_scale(result.low)))
     middle = (high - 0.5) if high is not None else (low or 0.0)

@@ -8,10 +8,13 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field
-from datetime import datetime
+from datetime import datetime, timedelta
 from typing import Any
 
-DOT, BAR_WIDTH = 7, 6
+DOT = 7
+# A name takes about a sixth of the chart's width.
+NAME_WIDTH = 0.16
+SAME_TIME = timedelta(days=3)
 FAN_ALPHA = "2b"
 
 
@@ -221,7 +224,7 @@ def _layout(plan: ChartPlan) -> dict[str, Any]:
         "xaxis": {"type": "date", "showgrid": False, "linecolor": "@rule", "hoverformat": "%-d %b %Y"},
         "yaxis": axis,
         "shapes": [*_mark_shapes(plan), _now_shape(plan.now)],
-        "annotations": [_mark_note(mark) for mark in plan.marks if mark.breaks],
+        "annotations": [_mark_note(mark) for mark in _named_marks(plan)],
     }
 
 
@@ -247,6 +250,22 @@ def _mark_shapes(plan: ChartPlan) -> list[dict[str, Any]]:
         }
         for mark in plan.marks
     ]
+
+
+def _named_marks(plan: ChartPlan) -> list[Mark]:
+    """What broke the trend, latest first: marks of one time share a name; one that would overlap goes without."""
+    breaking = sorted((mark for mark in plan.marks if mark.breaks), key=lambda mark: mark.at, reverse=True)
+    dots = [dot.at for line in plan.lines for stretch in line.stretches for dot in stretch]
+    if not breaking or not dots:
+        return breaking
+    least = (max(dots[-1], plan.now) - min(dots)) * NAME_WIDTH
+    named: list[Mark] = []
+    for mark in breaking:
+        if not named or named[-1].at - mark.at >= least:
+            named.append(mark)
+        elif named[-1].at - mark.at <= SAME_TIME and mark.label not in named[-1].label:
+            named[-1] = Mark(mark.at, f"{mark.label}, {named[-1].label}", True)
+    return named
 
 
 def _mark_note(mark: Mark) -> dict[str, Any]:

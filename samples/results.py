@@ -11,12 +11,13 @@ from django.db import IntegrityError, transaction
 from fleet.codes import IsoCode
 from fleet.models import Event, Measurand, OilCharge, Person, Reservoir, SamplePoint
 from fleet.refresh import want_refresh
+from fleet.wording import bound_text
 from samples.checks.battery import hard_errors, run_checks
 from samples.checks.candidates import CandidateSample, Doubt, PastEvent, PastSample
 from samples.expectations import Bottle, expectations
 from samples.history import History
 from samples.models import Doubt as DoubtRow
-from samples.models import IntakeFile, Laboratory, Result, Sample
+from samples.models import IntakeFile, Judgement, Laboratory, Result, Sample
 from samples.readings import Reading
 from samples.sample_codes import code_of
 
@@ -170,6 +171,7 @@ def set_aside(sample: Sample, by: Person, reason: str, now: datetime) -> None:
 def _judge(sample: Sample, verdict: Sample.Verdict, by: Person, reason: str, now: datetime) -> None:
     sample.verdict, sample.verdict_by, sample.verdict_at, sample.verdict_reason = verdict, by, now, reason.strip()
     sample.save(update_fields=["verdict", "verdict_by", "verdict_at", "verdict_reason"])
+    Judgement.objects.create(sample=sample, verdict=verdict, by=by, at=now, reason=sample.verdict_reason)
     want_refresh([sample.reservoir_id], now)
 
 
@@ -298,7 +300,7 @@ def _is_impossible(result: Result) -> bool:
 
 def _impossible_sentence(result: Result) -> str:
     known = result.measurand
-    possible = f"{known.sensible_low or 0:,.4g} to {known.sensible_high or 0:,.4g} {known.unit}"
+    possible = f"{bound_text(known.sensible_low or 0)} to {bound_text(known.sensible_high or 0)} {known.unit}"
     said = f"{result.reported_text} {result.reported_unit}"
     return f"{known.name}: {said} cannot be ({possible} can). Check the figure and its unit."
 

@@ -15,9 +15,10 @@ from samples.history import History, Reported
 from samples.lines import figure_key
 from samples.models import Outlook, Sample
 from samples.trends.arrays import DAYS_PER_MONTH
+from samples.trends.forecast import HORIZON_MONTHS
 from samples.trends.level import LevelParameters, LevelState, run_filter
 from samples.trends.outlook import STALE_INTERVALS, Refusal, StretchResults
-from samples.trends.scales import Scale, ScaleSpec, observe
+from samples.trends.scales import Scale, ScaleSpec, figure_to_y, observe
 from samples.trends.standing import Line
 from samples.trends.starting import StartingValues, starting_values
 from samples.trends.stretch import SMALL_SHARE, EventKind, EventMark, Family, Stretch, latest, resets, split
@@ -183,6 +184,18 @@ def state_of(outlook: Outlook) -> LevelState:
     kept = (outlook.level, outlook.drift, outlook.p_level, outlook.p_cross, outlook.p_drift, 0.0)
     a, b, p11, p12, p22, at = (np.array([part], dtype=np.float64) for part in kept)
     return LevelState(a, b, p11, p12, p22, at, np.array([outlook.n], dtype=np.int64))
+
+
+def slope_reaches(outlook: Outlook, now: datetime) -> datetime | None:
+    """When the level would meet the limit if it went on along its Theil–Sen slope; None where it leads elsewhere."""
+    limit = outlook.limit_high
+    if limit is None or outlook.level is None or outlook.sample is None or not outlook.slope or outlook.slope <= 0:
+        return None
+    spec = scale_spec(outlook.measurand, outlook.baseline)
+    months = (figure_to_y(limit, spec) - outlook.level) / outlook.slope
+    if not 0.0 < months <= HORIZON_MONTHS:
+        return None
+    return max(outlook.sample.drawn_at + timedelta(days=months * DAYS_PER_MONTH), now)
 
 
 def day_of(moment: datetime) -> float:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from fleet.models import Measurand
+from fleet.wording import bound_text, number_text
 from samples.history import History
 from samples.models import Result, Sample
 from samples.sample_codes import code_text
@@ -65,7 +66,8 @@ def cell_text(result: Result) -> str:
     """A result in the measurand's unit: a value, or what is known of it when only a code or a bound is."""
     if result.value is not None:
         mark = result.qualifier if result.qualifier != "≥" else "≥ "
-        return f"{mark}{result.value:,.{result.measurand.decimals}f}"
+        return f"{mark}{number_text(result.value, result.measurand.decimals)}"
     if result.high is None:
-        return f"over {result.low:,.4g}"
-    return f"up to {result.high:,.4g}" if not result.low else f"{result.low:,.4g}–{result.high:,.4g}"
+        return f"over {bound_text(result.low or 0.0)}"
+    high = bound_text(result.high)
+    return f"{bound_text(result.low)}–{high}" if result.low else f"up to {high}"

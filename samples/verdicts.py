@@ -29,11 +29,21 @@ class Verdict:
     sentences: list[str]
 
 
-def verdict(outlook: Outlook, limit: str, zone: ZoneInfo, as_of: datetime) -> Verdict:
-    """What the page says first about the measurand that speaks for the reservoir."""
+def verdict(
+    outlook: Outlook, limit: str, zone: ZoneInfo, as_of: datetime, slope_reaches: datetime | None = None
+) -> Verdict:
+    """What the page says first about the measurand that speaks for the reservoir.
+
+    `slope_reaches`: when the plain slope would meet the limit; said beside a forecast that believes it only slowly.
+    """
     measurand = outlook.measurand
     heading = _heading(outlook)
-    sentences = [_direction(outlook, measurand, zone), _passing(outlook, limit, zone, as_of), _chance(outlook, zone)]
+    sentences = [
+        _direction(outlook, measurand, zone),
+        _passing(outlook, limit, zone, as_of),
+        _along_the_slope(outlook, slope_reaches, zone),
+        _chance(outlook, zone),
+    ]
     return Verdict(heading, [sentence for sentence in sentences if sentence])
 
 
@@ -45,13 +55,15 @@ def _heading(outlook: Outlook) -> str:
 
 def quantity(measurand: Measurand) -> str:
     """What the sentence is about: “the ≥14 µm(c) count”, “water”."""
-    return f"the {measurand.symbol} count" if measurand.kind == Measurand.Kind.COUNT else measurand.name.lower()
+    return f"the {measurand.symbol} count" if measurand.kind == Measurand.Kind.COUNT else lower_first(measurand.name)
 
 
 def _direction(outlook: Outlook, measurand: Measurand, zone: ZoneInfo) -> str:
     since = f" since {day(outlook.stretch_from, zone)}" if outlook.stretch_from else ""
     what = quantity(measurand)
     what = what[0].upper() + what[1:]
+    if not outlook.n:
+        return ""
     if outlook.trend.startswith("too few"):
         samples = "sample" if outlook.n == 1 else "samples"
         return f"{what}: {outlook.n} {samples}{since}, too few to show a trend by themselves." if outlook.n else ""
@@ -70,6 +82,8 @@ def _passing(outlook: Outlook, limit: str, zone: ZoneInfo, as_of: datetime) -> s
     if outlook.runway == RunwayState.BEYOND:
         return f"It is not expected to pass the limit of {limit} within {HORIZON_MONTHS} months."
     if outlook.runway == RunwayState.CANNOT_SAY:
+        if not outlook.n:
+            return outlook.refusal_sentence
         return f"No forecast: {lower_first(outlook.refusal_sentence)}" if outlook.refusal_sentence else ""
     early = "as early as today" if _is_now(outlook.runway_early, as_of) else day(outlook.runway_early, zone)
     if outlook.runway_median is None:
@@ -78,6 +92,18 @@ def _passing(outlook: Outlook, limit: str, zone: ZoneInfo, as_of: datetime) -> s
         )
     late = day(outlook.runway_late, zone) if outlook.runway_late else f"beyond {HORIZON_MONTHS} months"
     return f"It passes the limit of {limit} around {day(outlook.runway_median, zone)} (80 % range {early} – {late})."
+
+
+def _along_the_slope(outlook: Outlook, reaches: datetime | None, zone: ZoneInfo) -> str:
+    """Only where the trend is shown and the forecast puts its middle later than the slope would."""
+    median = outlook.runway_median
+    forecast = outlook.runway in {RunwayState.DATED, RunwayState.BEYOND}
+    if reaches is None or not forecast or outlook.trend != "rising" or (median is not None and median <= reaches):
+        return ""
+    return (
+        f"If it kept climbing as it does now it would be there around {day(reaches, zone)}; "
+        "the forecast allows for climbs that ease off, and believes it more slowly."
+    )
 
 
 def _is_now(moment: datetime | None, as_of: datetime) -> bool:
@@ -106,6 +132,8 @@ def slope_text(outlook: Outlook) -> str:
         return ""
     percent = "% of new" if outlook.baseline else outlook.measurand.unit
     unit = {"count": "code steps", "log": "doublings", "percent": percent, "linear": outlook.measurand.unit}
+    if max(abs(edge) for edge in (outlook.slope, outlook.slope_low, outlook.slope_high)) < 0.005:
+        return "flat"
     return (
         f"{outlook.slope:+.2f} {unit[outlook.measurand.scale]} a month "
         f"({outlook.slope_low:+.2f} to {outlook.slope_high:+.2f}, 90 %)"

@@ -19,7 +19,7 @@
   };
 
   const narrow = (layout, element) =>
-    element.clientWidth < 520 ? { ...layout, margin: { ...layout.margin, l: 40, r: 4 }, yaxis: { ...layout.yaxis, title: undefined } } : layout;
+    element.clientWidth < 520 ? { ...layout, annotations: [], margin: { ...layout.margin, l: 40, r: 4 }, yaxis: { ...layout.yaxis, title: undefined } } : layout;
 
   const draw = (element) => {
     const source = document.getElementById(element.dataset.figure);

@@ -19,7 +19,7 @@ COLUMNS = [
     ("worst", "Against target (dashed) and limit (solid)", ""),
     ("headroom", "Headroom", "num"),
     ("runway", "Runway to limit, 80 % range", "num"),
-    ("", "Last 12", ""),
+    ("", "Last 12", "spare"),
     ("age", "Age", "num"),
 ]
 
@@ -60,12 +60,13 @@ def _csv_row(row: BoardRow) -> list[object]:
     word = StandingWord(row.word).label
     if standing is None:
         return [*place, word]
-    figures = [standing.code_text, standing.target_text, standing.limit_text, standing.because, standing.headroom]
-    chance = standing.chance_before_next
-    return [
-        *(*place, word, *figures, standing.headroom_unit, row.runway, chance),
-        *(standing.last_drawn_at, standing.next_due_at),
-    ]
+    figures = [standing.code_text, standing.target_text, standing.limit_text, standing.because]
+    headroom = None if standing.headroom is None else round(standing.headroom, 2)
+    past = standing.word == StandingWord.PAST_LIMIT
+    chance = None if past or standing.chance_before_next is None else round(standing.chance_before_next, 3)
+    zone = reservoir.area.site.zone
+    moments = [at and at.astimezone(zone) for at in (standing.last_drawn_at, standing.next_due_at)]
+    return [*place, word, *figures, headroom, standing.headroom_unit, row.runway, chance, *moments]
 
 
 def _columns(request: HttpRequest, sort: str) -> list[dict[str, str]]:

@@ -14,13 +14,13 @@ from django.utils import timezone
 from fleet.board import board_row
 from fleet.export import csv_response
 from fleet.models import Element, FilterPosition, Limit, Measurand, Reservoir, RunwayState, Target
-from fleet.wording import headroom_text, runway_aside, runway_text
+from fleet.wording import bound_text, headroom_text, number_text, runway_aside, runway_text
 from samples.charts import Chart, cleanliness_chart, other_charts
 from samples.history import History, read_history
 from samples.judgement import figure_in_column, figure_in_words
-from samples.lines import figure_key
 from samples.models import Outlook
 from samples.sample_codes import code_text
+from samples.series import figures_of, slope_reaches
 from samples.tables import history_csv, history_table
 from samples.trends.forecast import chance_words
 from samples.verdicts import Verdict, slope_text, verdict
@@ -86,13 +86,13 @@ def _verdict(history: History, outlooks: dict[str, Outlook], now: datetime) -> V
     if speaks is None:
         return None
     limit = figure_in_words(_figure(history, speaks, "limit"), speaks.measurand.key)
-    return verdict(speaks, limit, history.reservoir.area.site.zone, now)
+    return verdict(speaks, limit, history.reservoir.area.site.zone, now, slope_reaches(speaks, now))
 
 
 def _figure(history: History, outlook: Outlook, which: str) -> Target | Limit | None:
     judged_at = outlook.sample.drawn_at if outlook.sample else outlook.computed_at
-    look = history.target_at if which == "target" else history.limit_at
-    return look(figure_key(outlook.measurand.key), judged_at)
+    figures = figures_of(history, outlook.measurand.key, judged_at, outlook.computed_at)
+    return figures.target if which == "target" else figures.limit
 
 
 def _line(history: History, outlook: Outlook, now: datetime) -> OutlookLine:
@@ -113,12 +113,12 @@ def _line(history: History, outlook: Outlook, now: datetime) -> OutlookLine:
 
 def _value(outlook: Outlook) -> str:
     if outlook.value is not None:
-        return f"{outlook.value:,.{outlook.measurand.decimals}f}"
+        return number_text(outlook.value, outlook.measurand.decimals)
     if outlook.low is None and outlook.high is None:
         return ""
     if outlook.high is None:
-        return f"over {outlook.low:,.4g}"
-    return f"{outlook.low or 0:,.4g} to {outlook.high:,.4g}"
+        return f"over {bound_text(outlook.low or 0.0)}"
+    return f"{bound_text(outlook.low or 0.0)} to {bound_text(outlook.high)}"
 
 
 def _latest(history: History) -> dict[str, Any] | None:
