@@ -232,6 +232,7 @@ def _candidate(entry: SampleEntry) -> CandidateSample:
         code=entry.stated_code,
         counted_ml=counted,
         machine_hours=entry.facts.machine_hours,
+        reason=entry.facts.reason,
     )
 
 
