@@ -1,6 +1,6 @@
 """Fitting a filter element: the one before it comes out, and the event is on the reservoir's record."""
 
-from datetime import datetime, time
+from datetime import date, datetime, time
 
 from fleet.models import Element, Event, FilterPosition, Person
 from fleet.refresh import want_refresh
@@ -31,10 +31,13 @@ def fit(element: Element, found: str, by: Person, now: datetime) -> Element:
 
 
 def correct(element: Element, now: datetime) -> Element:
-    """Save what was wrong about an element that is on record."""
+    """Save what was wrong about an element that is on record; a corrected day takes the logged event with it."""
     with refusing():
         position = _hold(element.position_id)
+        was = Element.objects.get(pk=element.pk).fitted_on
         element.save()
+        if was != element.fitted_on:
+            _move_change(position, was, element.fitted_on, now)
         want_refresh([position.reservoir_id], now)
     return element
 
@@ -44,15 +47,30 @@ def _hold(position_id: int) -> FilterPosition:
     return positions.select_for_update(of=("self",)).get(pk=position_id)
 
 
-def _log_change(position: FilterPosition, element: Element, by: Person, now: datetime) -> None:
+def _moment(position: FilterPosition, day: date, now: datetime) -> datetime:
     """The day has no hour: noon of the site stands for it, or now when noon is still to come."""
-    noon = datetime.combine(element.fitted_on, NOON, tzinfo=position.reservoir.area.site.zone)
+    return min(datetime.combine(day, NOON, tzinfo=position.reservoir.area.site.zone), now)
+
+
+def _kind(position: FilterPosition) -> Event.Kind:
     is_breather = position.place == FilterPosition.Place.BREATHER
+    return Event.Kind.BREATHER if is_breather else Event.Kind.ELEMENT_CHANGE
+
+
+def _move_change(position: FilterPosition, was: date, day: date, now: datetime) -> None:
+    """Move the event that fitting logged, unless a person has given it an hour or another position shares it."""
+    shared = Element.objects.filter(position__reservoir=position.reservoir_id, fitted_on=was).exists()
+    events = Event.objects.filter(reservoir=position.reservoir_id, kind=_kind(position))
+    if not shared:
+        events.filter(at=_moment(position, was, now)).update(at=_moment(position, day, now))
+
+
+def _log_change(position: FilterPosition, element: Element, by: Person, now: datetime) -> None:
     note = f"{position.name}: {' '.join(filter(None, [element.part, element.rating]))}"
     event, is_new = Event.objects.get_or_create(
         reservoir_id=position.reservoir_id,
-        kind=Event.Kind.BREATHER if is_breather else Event.Kind.ELEMENT_CHANGE,
-        at=min(noon, now),
+        kind=_kind(position),
+        at=_moment(position, element.fitted_on, now),
         defaults={"note": note, "entered_by": by},
     )
     if not is_new:

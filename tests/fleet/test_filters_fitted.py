@@ -108,3 +108,11 @@ def test_fitting_asks_for_a_fresh_outlook(tom: Person) -> None:
     position = filter_position(reservoir())
     fit(new(position), "", tom, NOON)
     assert Standing.objects.get(reservoir=position.reservoir).wanted_at == NOON
+
+
+def test_a_corrected_day_takes_the_logged_change_with_it(tom: Person) -> None:
+    position = filter_position(reservoir())
+    fitted = fit(new(position), "", tom, NOON)
+    fitted.fitted_on = date(2026, 4, 20)
+    correct(fitted, NOON)
+    assert [event.at.date() for event in Event.objects.all()] == [date(2026, 4, 20)]
