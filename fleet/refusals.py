@@ -12,6 +12,10 @@ SENTENCES: dict[str, tuple[str, str]] = {
     "machine_once_an_area": ("name", "This area has a machine of that name already. Choose another name."),
     "machine_tag_once": ("tag", "Another machine carries this tag. A tag is used once."),
     "reservoir_once_a_machine": ("name", "This machine has a reservoir of that name already. Choose another name."),
+    "reservoir_tag_once_any_case": (
+        "tag",
+        "Another reservoir carries this tag, perhaps with other capital letters. Choose another tag.",
+    ),
     "reservoir_tag_printable": ("tag", "A tag is printed and typed: letters, digits, spaces and . - _ : only."),
     "reservoir_volume_positive": ("volume_l", "The volume must be more than 0 L."),
     "reservoir_interval_positive": ("interval_days", "There must be at least one day between samples."),
@@ -45,6 +49,8 @@ for _table in ("target", "limit"):
         f"{_table}_scope_columns": ("scope", "What it is set for and the choice below it do not fit."),
         f"{_table}_has_source": ("source", "Say where the figure comes from."),
     }
+for _name in ("area_once_a_site", "machine_once_an_area", "machine_tag_once"):
+    SENTENCES[f"{_name}_any_case"] = SENTENCES[_name]
 FALLBACK = "This would contradict what is on record already. Reload the page and look again."
 
 
@@ -75,8 +81,12 @@ def refusing() -> Iterator[None]:
     except ProtectedError as error:
         kinds = sorted({str(row._meta.verbose_name) for row in error.protected_objects})
         raise RefusedError(
-            f"It is still used by {len(error.protected_objects)} other records ({', '.join(kinds)}), so it stays.",
+            f"It is still used by {_records(len(error.protected_objects))} ({', '.join(kinds)}), so it stays.",
             code="still_used",
         ) from error
     except IntegrityError as error:
         raise refusal_of(error) from error
+
+
+def _records(count: int) -> str:
+    return "1 other record" if count == 1 else f"{count} other records"

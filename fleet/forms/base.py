@@ -12,6 +12,7 @@ from django.db import models
 from django.forms.models import construct_instance
 from django.utils import timezone
 
+from fleet.forms.words import speak_plainly
 from fleet.models import Site
 from fleet.refusals import SENTENCES
 from fleet.site_time import moment_at, written_at
@@ -44,7 +45,7 @@ class SiteTimeField(forms.DateTimeField):
     """Date and time as the site's clock shows them; the form turns it into a moment once it knows the site."""
 
     def __init__(self, **more: Any) -> None:
-        attrs = {"type": "datetime-local", "class": "moment"}
+        attrs = {"type": "datetime-local", "class": "moment when"}
         more["widget"] = forms.DateTimeInput(attrs=attrs, format="%Y-%m-%dT%H:%M")
         super().__init__(**more)
         self.error_messages["invalid"] = "Give a day and a time, for example 2026-03-01 14:30."
@@ -71,9 +72,8 @@ def plant_field(column: models.Field[Any, Any], **more: Any) -> forms.Field | No
 
 
 def _say_nothing_chosen(field: forms.Field) -> None:
-    """Words for the empty choice, instead of a row of dashes, and for a field that was left empty."""
+    """Words for the empty choice, instead of a row of dashes."""
     words = "choose" if field.required else "none"
-    field.error_messages["required"] = "Choose one." if isinstance(field, forms.ChoiceField) else "Fill this in."
     if isinstance(field, forms.ModelChoiceField):
         if field.empty_label is not None:
             field.empty_label = words
@@ -104,6 +104,7 @@ class PlantForm(ModelForm):
     def __init__(self, *args: Any, now: datetime, **more: Any) -> None:
         super().__init__(*args, **more)
         self.now = now
+        speak_plainly(self)
         for field in self.fields.values():
             _say_nothing_chosen(field)
         for name in self.site_times:
@@ -150,7 +151,9 @@ class PlantForm(ModelForm):
         self._say_broken_rules()
 
     def _say_broken_rules(self) -> None:
+        """Every broken rule of the table, each sentence once: two rules may say the same of one name."""
         exclude = self._get_validation_exclusions()  # type: ignore[attr-defined]
+        said = set()
         for constraint in self._meta.model._meta.constraints:
             if constraint.name in self.left_to_saving:
                 continue
@@ -158,7 +161,9 @@ class PlantForm(ModelForm):
                 constraint.validate(self._meta.model, self.instance, exclude=exclude)
             except ValidationError as error:
                 field, sentence = SENTENCES.get(constraint.name, ("", " ".join(error.messages)))
-                self.say(sentence, field, constraint.name)
+                if sentence not in said:
+                    self.say(sentence, field, constraint.name)
+                said.add(sentence)
 
     def say(self, sentence: str, field: str, code: str) -> None:
         """Show a sentence at a field, or above the form when the form has no such field."""

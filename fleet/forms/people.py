@@ -35,6 +35,12 @@ class PersonForm(PlantForm):
             "role": ROLES,
             "is_active": "Leave people on record; without this tick they cannot log in.",
         }
+        error_messages = {
+            "username": {
+                "invalid": "Letters, digits and @ . + - _ only, without a space.",
+                "unique": "Somebody logs in by this name already. Choose another.",
+            }
+        }
 
     def __init__(self, *args: Any, **more: Any) -> None:
         super().__init__(*args, **more)

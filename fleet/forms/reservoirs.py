@@ -7,6 +7,7 @@ from django.core.exceptions import ValidationError
 
 from fleet.forms.base import PlantForm, PlantMeta, SiteTimeField
 from fleet.models import Fluid, Machine, Reservoir, ReservoirAlias, SamplePoint, Site
+from fleet.refusals import SENTENCES
 from fleet.reservoirs import FirstFilling
 
 NO_MACHINE = "Choose the machine, or write the name of a new one."
@@ -55,6 +56,12 @@ class ReservoirForm(PlantForm):
             "cooler": "A water cooler is a source of water.",
             "retired_on": "Leave empty while it is in use. Its history stays.",
             "also_serves": "Other machines that get their oil from it.",
+        }
+        error_messages = {
+            "tag": {"unique": SENTENCES["reservoir_tag_once_any_case"][1]},
+            "volume_l": {
+                "max_value": "No reservoir holds that much: the volume is in litres, up to %(limit_value)s L."
+            },
         }
 
     def __init__(self, *args: Any, **more: Any) -> None:

@@ -4,6 +4,7 @@ import zoneinfo
 
 from django.core.exceptions import ValidationError
 from django.db import models
+from django.db.models.functions import Lower
 
 
 def known_time_zone(name: str) -> None:
@@ -39,7 +40,10 @@ class Area(models.Model):
 
     class Meta:
         ordering = ["site__name", "name"]
-        constraints = [models.UniqueConstraint(fields=["site", "name"], name="area_once_a_site")]
+        constraints = [
+            models.UniqueConstraint(fields=["site", "name"], name="area_once_a_site"),
+            models.UniqueConstraint("site", Lower("name"), name="area_once_a_site_any_case"),
+        ]
 
     def __str__(self) -> str:
         return self.name
@@ -60,7 +64,9 @@ class Machine(models.Model):
         ordering = ["area__name", "name"]
         constraints = [
             models.UniqueConstraint(fields=["area", "name"], name="machine_once_an_area"),
+            models.UniqueConstraint("area", Lower("name"), name="machine_once_an_area_any_case"),
             models.UniqueConstraint(fields=["tag"], condition=~models.Q(tag=""), name="machine_tag_once"),
+            models.UniqueConstraint(Lower("tag"), condition=~models.Q(tag=""), name="machine_tag_once_any_case"),
         ]
 
     def __str__(self) -> str:

@@ -2,8 +2,9 @@
 
 from datetime import datetime, timedelta
 
-from django.core.validators import MinValueValidator, RegexValidator
+from django.core.validators import MaxValueValidator, MinValueValidator, RegexValidator
 from django.db import models
+from django.db.models.functions import Lower
 from django.utils import timezone
 
 from fleet.models.oil import OilCharge
@@ -12,6 +13,8 @@ from fleet.querysets import ReservoirQuerySet
 
 # It stands in an address, on a label and in lab files: nothing that one of them would trip over.
 TAG = r"^[\w.:-]+( [\w.:-]+)*$"
+# More than any lube or hydraulic tank holds: beyond it somebody wrote the wrong unit or slipped on a key.
+MOST_LITRES = 1_000_000
 
 
 class ReservoirClass(models.TextChoices):
@@ -45,7 +48,7 @@ class Reservoir(models.Model):
     )
     reservoir_class = models.CharField("class", max_length=12, choices=ReservoirClass)
     criticality = models.CharField(max_length=1, choices=Criticality, default=Criticality.B)
-    volume_l = models.FloatField("volume, L", validators=[MinValueValidator(0.1)])
+    volume_l = models.FloatField("volume, L", validators=[MinValueValidator(0.1), MaxValueValidator(MOST_LITRES)])
     pump_flow_l_min = models.FloatField("pump flow, L/min", null=True, blank=True, validators=[MinValueValidator(0)])
     pressure_bar = models.FloatField("working pressure, bar", null=True, blank=True, validators=[MinValueValidator(0)])
     sensitive_part = models.CharField("most sensitive part", max_length=80, blank=True)
@@ -69,6 +72,7 @@ class Reservoir(models.Model):
         ordering = ["machine__name", "name"]
         constraints = [
             models.UniqueConstraint(fields=["machine", "name"], name="reservoir_once_a_machine"),
+            models.UniqueConstraint(Lower("tag"), name="reservoir_tag_once_any_case"),
             models.CheckConstraint(condition=models.Q(tag__regex=TAG), name="reservoir_tag_printable"),
             models.CheckConstraint(condition=models.Q(volume_l__gt=0), name="reservoir_volume_positive"),
             models.CheckConstraint(condition=models.Q(interval_days__gte=1), name="reservoir_interval_positive"),
