@@ -1,10 +1,14 @@
-"""What was done to the oil: an event and the oil charges that follow from it, together or not at all."""
+"""What was done to the oil: an event and the oil charges that follow from it, together or not at all.
+
+Litres that the reservoir could not hold are refused: volumes correct slopes, so a slip there bends every trend.
+"""
 
 from datetime import datetime
 
 from fleet.models import Event, OilCharge, Reservoir
 from fleet.refresh import want_refresh
 from fleet.refusals import RefusedError, refusing
+from fleet.volumes import hold_volume
 
 FILLS_ANEW = Event.Kind.OIL_CHANGE
 NO_OIL = "No oil is on record for this reservoir at that time. Choose the oil that was filled in."
@@ -18,6 +22,7 @@ def log(event: Event, now: datetime) -> Event:
     """Save a new event. An oil change closes the oil charge of its moment and opens the next one."""
     with refusing():
         reservoir = _hold(event.reservoir_id)
+        hold_volume(reservoir, event.litres, "litres")
         event.save(force_insert=True)
         if event.kind == FILLS_ANEW:
             _fill_anew(reservoir, event)
@@ -30,9 +35,11 @@ def correct(event: Event, now: datetime) -> Event:
     with refusing():
         reservoir = _hold(event.reservoir_id)
         before = Event.objects.get(pk=event.pk, reservoir=reservoir)
+        hold_volume(reservoir, event.litres, "litres")
         event.save()
         if before.kind == event.kind == FILLS_ANEW:
             _move(reservoir, before.at, event)
+            _refill(reservoir, before, event)
         elif before.kind == FILLS_ANEW:
             _take_back(reservoir, before.at)
         elif event.kind == FILLS_ANEW:
@@ -106,6 +113,13 @@ def _move(reservoir: Reservoir, was_at: datetime, event: Event) -> None:
         earlier.save(update_fields=["ended_at"])
     if event.at < was_at:
         _describe(charge, event)
+
+
+def _refill(reservoir: Reservoir, before: Event, event: Event) -> None:
+    """Litres that were corrected are the charge's; litres that were taken back leave the reservoir's own volume."""
+    if event.litres != before.litres:
+        filled = event.litres or reservoir.volume_l
+        OilCharge.objects.filter(reservoir=reservoir, started_at=event.at).update(volume_l=filled)
 
 
 def _take_back(reservoir: Reservoir, at: datetime) -> None:

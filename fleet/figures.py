@@ -5,7 +5,9 @@ Pure: works on the rows it is given by attribute alone, so that it can be tested
 
 from collections.abc import Iterable
 from datetime import date
-from typing import Final, Protocol, TypeVar
+from typing import Final, Literal, Protocol, TypeVar
+
+from fleet.codes import parse_target_code
 
 # Nearest first; the same words as the figure's scope column.
 NEARNESS: Final = ("reservoir", "fluid", "class", "plant")
@@ -31,6 +33,20 @@ class Dated(Protocol):
     def valid_from(self) -> date: ...
 
 
+class Sided(Protocol):
+    """A target or limit, as far as holding one against the other needs to know it."""
+
+    @property
+    def code(self) -> str: ...
+    @property
+    def low(self) -> float | None: ...
+    @property
+    def high(self) -> float | None: ...
+    @property
+    def basis(self) -> str: ...
+
+
+Side = Literal["code", "low", "high"]
 F = TypeVar("F", bound=Dated)
 
 
@@ -58,3 +74,25 @@ def figure_for(figures: Iterable[F], measurand_key: str, day: date, fluid_id: in
 
 def _nearest_then_newest(figure: Dated) -> tuple[int, int]:
     return NEARNESS.index(figure.scope), -figure.valid_from.toordinal()
+
+
+def side_beyond(target: Sided, limit: Sided) -> Side | None:
+    """Where a target asks for less than its limit does, or None where the two can stand together.
+
+    Codes are compared size by size, values side by side; a size or side that one of them leaves out is not compared,
+    equal figures fit, and figures of different bases (a value, a change from new oil) are not compared at all.
+    """
+    if target.basis != limit.basis:
+        return None
+    if target.code and limit.code:
+        return "code" if _is_dirtier(target.code, limit.code) else None
+    if target.high is not None and limit.high is not None and target.high > limit.high:
+        return "high"
+    if target.low is not None and limit.low is not None and target.low < limit.low:
+        return "low"
+    return None
+
+
+def _is_dirtier(target: str, limit: str) -> bool:
+    pairs = zip(parse_target_code(target).sizes, parse_target_code(limit).sizes, strict=True)
+    return any(own.number > line.number for own, line in pairs if own.number is not None and line.number is not None)

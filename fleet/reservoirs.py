@@ -7,6 +7,7 @@ from datetime import datetime
 from fleet.models import Area, Fluid, Machine, OilCharge, Reservoir, SamplePoint
 from fleet.refresh import want_refresh
 from fleet.refusals import refusing
+from fleet.volumes import hold_volume
 
 
 @dataclass(frozen=True, slots=True)
@@ -77,6 +78,7 @@ def save_fluid(fluid: Fluid, now: datetime) -> Fluid:
 def save_charge(charge: OilCharge, now: datetime) -> OilCharge:
     """Save a corrected filling."""
     with refusing():
+        hold_volume(charge.reservoir, charge.volume_l, "volume_l")
         charge.save()
         want_refresh([charge.reservoir_id], now)
     return charge

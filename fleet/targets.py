@@ -1,13 +1,13 @@
 """Setting targets and limits. A new figure stands beside the old one; whoever it applies to is looked at afresh."""
 
 from dataclasses import dataclass
-from datetime import date, datetime
+from datetime import date, datetime, time
 
-from fleet.figures import figure_for
+from fleet.figures import figure_for, side_beyond
 from fleet.models import Limit, Measurand, Person, Reservoir, Scope, Target
 from fleet.models.targets import Figure
 from fleet.refresh import want_refresh
-from fleet.refusals import refusing
+from fleet.refusals import RefusedError, refusing
 
 
 @dataclass(frozen=True, slots=True)
@@ -39,13 +39,61 @@ def in_force(reservoir: Reservoir, day: date, now: datetime) -> list[InForce]:
 
 
 def set_figure(figure: Figure, author: Person, now: datetime) -> Figure:
-    """Save a new figure, or a corrected one; the author of a correction is who made it."""
+    """Save a new figure, or a corrected one; the author of a correction is who made it.
+
+    Raises RefusedError for a target that would lie beyond its limit, and for a limit tighter than its target.
+    """
     with refusing():
+        _fit_together(figure)
         touched = set() if figure.pk is None else reservoirs_in_scope(type(figure)._default_manager.get(pk=figure.pk))
         figure.author = author
         figure.save()
         want_refresh(touched | reservoirs_in_scope(figure), now)
     return figure
+
+
+def facing(figure: Figure) -> Figure | None:
+    """The limit that a target meets on its first day, or the target that a limit meets: the nearest of its scope.
+
+    A figure of one reservoir meets what that reservoir was held to; one of a fluid or a class meets the figure of the
+    same fluid or class, and that of the plant where there is none.
+    """
+    other = Limit if isinstance(figure, Target) else Target
+    if figure.scope == Scope.RESERVOIR:
+        return _facing_in_reservoir(figure, other)
+    rows = other.objects.filter(site=figure.site_id, measurand=figure.measurand_id).select_related("measurand")
+    of_scope = rows.filter(scope=figure.scope, reservoir_class=figure.reservoir_class, fluid=figure.fluid_id)
+    fitting = [*of_scope, *rows.filter(scope=Scope.PLANT)]
+    return figure_for(fitting, figure.measurand.key, figure.valid_from, figure.fluid_id)
+
+
+def _facing_in_reservoir(figure: Figure, other: type[Target] | type[Limit]) -> Figure | None:
+    reservoir = figure.reservoir
+    if reservoir is None:
+        return None
+    end_of_day = datetime.combine(figure.valid_from, time.max, reservoir.area.site.zone)
+    charge = reservoir.charge_on(end_of_day)
+    fluid_id = charge.fluid_id if charge else None
+    rows = other.objects.for_reservoir(reservoir, {fluid_id} if fluid_id else set())
+    return figure_for(rows, figure.measurand.key, figure.valid_from, fluid_id)
+
+
+def _fit_together(figure: Figure) -> None:
+    met = facing(figure)
+    if met is None:
+        return
+    is_target = isinstance(figure, Target)
+    side = side_beyond(figure, met) if is_target else side_beyond(met, figure)
+    if side is None:
+        return
+    kinds = ("target", "lies beyond the limit") if is_target else ("limit", "is tighter than the target")
+    way_out = "Choose another, or set the limit first." if is_target else "Choose another, or set the target first."
+    raise RefusedError(
+        f"The {kinds[0]} {figure.text} {kinds[1]} {met.text}, which is in force on that day "
+        f"(set for {met.get_scope_display()} from {met.valid_from:%-d %b %Y}). {way_out}",
+        side,
+        code="target_beyond_limit",
+    )
 
 
 def withdraw(figure: Figure, now: datetime) -> None:

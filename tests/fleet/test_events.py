@@ -10,6 +10,7 @@ from django.db import connection
 from fleet import events
 from fleet.models import Event, OilCharge, Reservoir, Standing
 from fleet.refusals import RefusedError
+from fleet.reservoirs import save_charge
 from tests.builders import NOON, days_ago, fluid, reservoir
 
 pytestmark = pytest.mark.django_db
@@ -169,3 +170,46 @@ def test_two_people_who_log_oil_changes_at_once_leave_whole_fillings() -> None:
     for thread in threads:
         thread.join()
     assert fillings(tank) == [(FILLED, moments[0]), (moments[0], moments[1]), (moments[1], None)]
+
+
+@pytest.mark.parametrize("kind", ["oil_change", "partial_change", "top_up"])
+def test_more_litres_than_the_reservoir_could_hold_are_refused(kind: str) -> None:
+    tank = reservoir(volume_l=360)
+    with pytest.raises(RefusedError) as refusal:
+        events.log(Event(reservoir=tank, kind=kind, at=days_ago(3), litres=9999), NOON)
+    assert (refusal.value.code, refusal.value.field) == ("litres_too_many", "litres")
+    assert "9999 L do not fit" in refusal.value.sentence
+    assert "360 L on record. Correct the litres, or the volume" in refusal.value.sentence
+    assert (Event.objects.count(), fillings(tank)) == (0, [(FILLED, None)])
+
+
+def test_pipes_and_cylinders_may_hold_half_as_much_again() -> None:
+    oil_change(reservoir(volume_l=360), days_ago(3), litres=540)
+    assert OilCharge.objects.get(ended_at=None).volume_l == 540
+
+
+@pytest.mark.parametrize(("litres", "volume"), [(380, 380), (None, 400)])
+@pytest.mark.parametrize("moved_to", [days_ago(30), days_ago(45)])
+def test_corrected_litres_are_the_charges_too(litres: float | None, volume: float, moved_to: datetime) -> None:
+    tank = reservoir()
+    change = oil_change(tank, days_ago(30), litres=410)
+    change.litres, change.at = litres, moved_to
+    events.correct(change, NOON)
+    assert tank.charges.get(ended_at=None).volume_l == volume
+
+
+def test_a_volume_corrected_on_the_charge_outlives_a_note_on_the_event() -> None:
+    tank = reservoir()
+    change = oil_change(tank, days_ago(30))
+    tank.charges.filter(ended_at=None).update(volume_l=350)
+    change.note = "new filter, too"
+    events.correct(change, NOON)
+    assert tank.charges.get(ended_at=None).volume_l == 350
+
+
+def test_a_charge_cannot_hold_more_than_its_reservoir_could() -> None:
+    charge = reservoir(volume_l=360).charges.get()
+    charge.volume_l = 9999
+    with pytest.raises(RefusedError) as refusal:
+        save_charge(charge, NOON)
+    assert (refusal.value.code, refusal.value.field) == ("litres_too_many", "volume_l")

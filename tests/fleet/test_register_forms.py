@@ -18,6 +18,7 @@ from tests.builders import (
     event,
     filter_position,
     fluid,
+    limit,
     measurand,
     person,
     reservoir,
@@ -112,6 +113,57 @@ def test_what_does_not_fit_is_said_at_its_field(client: Client, wrong: dict[str,
 def test_a_tag_that_is_taken_is_refused(client: Client) -> None:
     reservoir(tag="P7-HP")
     assert faults(send(client, "register-reservoir-add", tank_facts())) == {"tag": ["unique"]}
+
+
+def test_a_tag_that_differs_by_its_capitals_only_is_refused(client: Client) -> None:
+    reservoir(tag="p7-hp")
+    answer = send(client, "register-reservoir-add", tank_facts())
+    assert faults(answer) == {"tag": ["reservoir_tag_once_any_case"]}
+    assert "perhaps with other capital letters" in answer.content.decode()
+
+
+@pytest.mark.parametrize("name", ["Press hall", "PRESS HALL"])
+def test_an_area_has_its_name_once_at_a_site_whatever_its_capitals(client: Client, name: str) -> None:
+    facts = {"site": area("Press hall").site_id, "name": name}
+    code = "area_once_a_site" if name == "Press hall" else "area_once_a_site_any_case"
+    assert faults(send(client, "register-area-add", facts)) == {"name": [code]}
+    other = send(client, "register-area-add", facts | {"site": site("Far works").pk})
+    assert other.status_code == 302
+
+
+@pytest.mark.parametrize(
+    ("facts", "found"),
+    [
+        ({"name": "press 1", "tag": "X"}, {"name": ["machine_once_an_area_any_case"]}),
+        ({"name": "Press 2", "tag": "m-1"}, {"tag": ["machine_tag_once_any_case"]}),
+    ],
+)
+def test_a_machine_has_its_name_and_tag_once_whatever_their_capitals(
+    client: Client, facts: dict[str, str], found: dict[str, list[str]]
+) -> None:
+    there = Machine.objects.create(area=area(), name="Press 1", tag="M-1")
+    assert faults(send(client, "register-machine-add", facts | {"area": there.area_id})) == found
+
+
+@pytest.mark.parametrize(
+    ("wrong", "sentence"),
+    [
+        ({"pressure_bar": "-1"}, "Must be 0 or more."),
+        ({"interval_days": "0"}, "Must be 1 or more."),
+        ({"interval_days": "soon"}, "Give a whole number."),
+        ({"volume_l": "1000001"}, "No reservoir holds that much"),
+        ({"reservoir_class": "teapot"}, "That is not on the list."),
+        ({"area": "999999"}, "That is not on the list."),
+        ({"name": ""}, "Fill this in."),
+        ({"next_stop_on": "soon"}, "Give a day, for example 2026-03-01."),
+        ({"name": "x" * 81}, "At most 80 characters fit; these are 81."),
+    ],
+)
+def test_what_does_not_fit_is_said_in_our_own_words(client: Client, wrong: dict[str, str], sentence: str) -> None:
+    page = send(client, "register-reservoir-add", tank_facts(**wrong)).content.decode()
+    assert sentence in page
+    for borrowed in ("Ensure", "Select a valid", "Enter a"):
+        assert borrowed not in page
 
 
 def test_a_reservoir_that_was_there_a_moment_ago_is_refused_in_words(client: Client) -> None:
@@ -263,6 +315,17 @@ def test_a_figure_that_makes_no_sense_is_refused(
 ) -> None:
     facts = figure_facts(reservoir(), measurand=measurand(key).pk, site=site().pk) | wrong
     assert faults(send(client, "register-target-add", facts)) == found
+
+
+@pytest.mark.parametrize("wrong", ["target", "limit"])
+def test_a_target_beyond_its_limit_is_refused_at_both_forms(client: Client, wrong: str) -> None:
+    tank = reservoir()
+    if wrong == "target":
+        limit(tank, "17/15/12")
+    else:
+        target(tank, "20/18/15")
+    answer = send(client, f"register-{wrong}-add", figure_facts(tank))
+    assert faults(answer) == {"code": ["target_beyond_limit"]}
 
 
 def test_the_makers_figure_stands_beside_the_form(client: Client) -> None:
