@@ -3,7 +3,7 @@
 from samples.models.intake import IntakeFile, PendingFile
 from samples.models.laboratories import Laboratory
 from samples.models.outlooks import Outlook
-from samples.models.results import Doubt, Result
+from samples.models.results import Doubt, Judgement, Result
 from samples.models.samples import Sample
 
-__all__ = ["Doubt", "IntakeFile", "Laboratory", "Outlook", "PendingFile", "Result", "Sample"]
+__all__ = ["Doubt", "IntakeFile", "Judgement", "Laboratory", "Outlook", "PendingFile", "Result", "Sample"]

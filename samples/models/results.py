@@ -81,3 +81,19 @@ class Doubt(models.Model):
 
     def __str__(self) -> str:
         return self.sentence
+
+
+class Judgement(models.Model):
+    """One word of a person on a sample. The sample carries the latest; here every one of them stays."""
+
+    sample = models.ForeignKey(Sample, on_delete=models.CASCADE, related_name="judgements")
+    verdict = models.CharField(max_length=10, choices=Sample.Verdict)
+    by = models.ForeignKey(Person, on_delete=models.SET_NULL, null=True, blank=True, related_name="+")
+    at = models.DateTimeField()
+    reason = models.CharField(max_length=240, blank=True)
+
+    class Meta:
+        ordering = ["sample", "at", "pk"]
+
+    def __str__(self) -> str:
+        return f"{self.get_verdict_display()}, {self.at:%-d %b %Y}"

@@ -17,7 +17,7 @@ from samples.forms.judge import JudgeForm
 from samples.history import History, read_history
 from samples.judgement import judged_results
 from samples.lines import CODE_KEY
-from samples.models import Result, Sample
+from samples.models import Judgement, Result, Sample
 from samples.results import EntryError, accept, set_aside
 from samples.sample_codes import code_text
 
@@ -64,6 +64,7 @@ def _page(request: HttpRequest, pk: int, form: JudgeForm, status: int = 200) -> 
         "zone": history.reservoir.area.site.zone,
         "charge": history.charge_at(found.drawn_at),
         "revisions": _revisions(found),
+        "judgements": list(Judgement.objects.filter(sample=found).select_related("by")),
         **_figures(history, found),
     }
     return render(request, "samples/sample.html", context, status=status)

@@ -7,7 +7,7 @@ from django.test import Client
 from django.urls import reverse
 
 from fleet.models import Person, Reservoir, Role, Standing
-from samples.models import Doubt, Result, Sample
+from samples.models import Doubt, IntakeFile, Judgement, Result, Sample
 from tests import builders
 from tests.builders import NOON, days_ago
 from tests.samples.scene import client_as, errors_of
@@ -170,3 +170,35 @@ def test_the_list_comes_as_csv_with_figures_in_canonical_units(doubtful: Sample)
     heading, row = b"".join(response.streaming_content).decode("utf-8-sig").splitlines()  # type: ignore[attr-defined]
     assert dict(zip(heading.split(","), row.split(","), strict=False))["ISO 4406"] == "18/17/13"
     assert "2178.0,847.0,63.0" in row
+
+
+def test_every_word_on_it_stays_in_order(doubtful: Sample, engineer: Client) -> None:
+    judge(engineer, doubtful, "accepted", "repeat agrees")
+    judge(engineer, doubtful, "set_aside", "the repeat was of another tank")
+    page = page_of(doubtful)
+    assert page.index("accepted by") < page.index("set aside by")
+    assert "repeat agrees" in page
+    assert [one.verdict for one in doubtful.judgements.all()] == ["accepted", "set_aside"]
+
+
+def test_a_refused_word_leaves_no_trace(doubtful: Sample, engineer: Client) -> None:
+    judge(engineer, doubtful, "set_aside", "")
+    assert not Judgement.objects.exists()
+
+
+def test_a_doubt_that_was_answered_stands_back(doubtful: Sample, engineer: Client) -> None:
+    judge(engineer, doubtful, "accepted")
+    page = page_of(doubtful)
+    assert "Was in doubt when it came in:" in page
+    assert "<strong>All rose.</strong>" not in page
+
+
+def test_the_list_of_one_file_says_which(press: Reservoir) -> None:
+    facts = {"digest": "1", "rows": 1, "added": 1, "entered_at": NOON}
+    file = IntakeFile.objects.create(name="may.csv", **facts)
+    builders.sample(press, NOON, {"water": 1.0}, intake=file)
+    builders.sample(press, days_ago(3), {"water": 1.0})
+    response = client_as().get(reverse("samples"), {"intake": str(file.pk)})
+    assert len(response.context["rows"]) == 1
+    assert "from the file may.csv" in response.content.decode()
+    assert f'name="intake" value="{file.pk}"' in response.content.decode()
