@@ -58,6 +58,12 @@ class FileCheck:
         return self.counts[RowState.WRONG]
 
     @property
+    def day_first(self) -> CellProblem | None:
+        """The first date that could also be read month first; the file is told once how it was read."""
+        notes = (note for row in self.rows for note in row.notes)
+        return next((note for note in notes if note.code == "date_day_first"), None)
+
+    @property
     def is_good(self) -> bool:
         """Nothing in it is wrong; it may still add nothing."""
         return not (self.problem or self.columns or self.wrong)

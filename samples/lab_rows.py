@@ -15,6 +15,7 @@ from samples.drawn_moments import drawn_moment
 from samples.history import History, read_history
 from samples.intake.columns import COUNT_FIELDS, Columns
 from samples.intake.rows import RowReading
+from samples.intake.told import figures_in_words
 from samples.lab_matching import Names
 from samples.models import Laboratory, Sample
 from samples.on_record import OnRecord, differences
@@ -47,6 +48,7 @@ class RowVerdict:
     reservoir: Reservoir | None = None
     drawn_at: datetime | None = None
     code: str = ""
+    read: str = ""
     problems: Sequence[CellProblem] = ()
     notes: Sequence[CellProblem] = ()
     doubts: Sequence[Doubt] = ()
@@ -90,12 +92,12 @@ class RowChecker:
 
     def _place(self, row: RowReading) -> _Placed | RowVerdict:
         problems = [*row.problems, *self._amount_problems(row)]
-        if problems or row.drawn_on is None:
-            return self._wrong(row, problems)
-        reservoir = self.names.reservoir(row.reservoir, row.drawn_on)
         laboratory = self.names.laboratory(row.laboratory)
         if isinstance(laboratory, Problem):
             problems.append(self._cell(row, "laboratory", row.laboratory, laboratory))
+        if row.drawn_on is None or not row.reservoir:
+            return self._wrong(row, problems)
+        reservoir = self.names.reservoir(row.reservoir, row.drawn_on)
         if isinstance(reservoir, Problem):
             return self._wrong(row, [self._cell(row, "reservoir", row.reservoir, reservoir), *problems])
         point = self.names.point(reservoir, row.sample_point)
@@ -161,8 +163,7 @@ class RowChecker:
                 lines[id(sample)] = one.row.line
                 record.add(sample)
                 self._numbers.setdefault(_number_key(one.entry), one.entry.reservoir)
-                if verdict.state == RowState.ADDS:
-                    history = history.including(sample)
+                history = history.including(sample)
             verdicts.append(verdict)
         return verdicts
 
@@ -207,13 +208,21 @@ class RowChecker:
             reservoir=one.entry.reservoir,
             drawn_at=one.entry.facts.drawn_at,
             code=str(checked.preview.code or ""),
+            read=figures_in_words(one.row.readings),
             notes=one.row.notes,
             doubts=checked.preview.doubts if state == RowState.IN_DOUBT else (),
             checked=checked,
         )
 
     def _wrong(self, row: RowReading, problems: Sequence[CellProblem]) -> RowVerdict:
-        return RowVerdict(row.line, RowState.WRONG, row.reservoir, problems=problems, notes=row.notes)
+        return RowVerdict(
+            row.line,
+            RowState.WRONG,
+            row.reservoir,
+            problems=problems,
+            notes=row.notes,
+            read=figures_in_words(row.readings),
+        )
 
     def _cell(self, row: RowReading, name: str, value: str, problem: Problem) -> CellProblem:
         column = self.columns.by_field.get(name)

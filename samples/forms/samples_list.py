@@ -8,7 +8,7 @@ from typing import Any
 from django import forms
 
 from fleet.models import Area
-from samples.models import Laboratory, Sample
+from samples.models import IntakeFile, Laboratory, Sample
 
 FIND_ATTRS = {"type": "search", "placeholder": "reservoir, number, label", "size": 20}
 DAY_ATTRS = {"type": "date"}
@@ -21,6 +21,7 @@ class SamplesFilter(forms.Form):
     verdict = forms.ChoiceField(required=False, choices=[("", "all"), *Sample.Verdict.choices])
     laboratory = forms.ModelChoiceField(Laboratory.objects.all(), required=False, empty_label="all laboratories")
     area = forms.ModelChoiceField(Area.objects.all(), required=False, empty_label="all areas")
+    intake = forms.ModelChoiceField(IntakeFile.objects.all(), required=False, widget=forms.HiddenInput())
     since = forms.DateField(label="From", required=False, widget=forms.DateInput(attrs=DAY_ATTRS, format="%Y-%m-%d"))
     until = forms.DateField(label="To", required=False, widget=forms.DateInput(attrs=DAY_ATTRS, format="%Y-%m-%d"))
 
@@ -40,6 +41,7 @@ class SamplesFilter(forms.Form):
             "verdict": chosen.get("verdict"),
             "laboratory": chosen.get("laboratory"),
             "reservoir__area": chosen.get("area"),
+            "intake": chosen.get("intake"),
         }
         found = found.filter(**{name: value for name, value in wanted.items() if value})
         if chosen.get("since"):

@@ -143,8 +143,9 @@ def match_columns(headings: Sequence[str], *, line: int = 1) -> Columns:
     by_field: dict[str, Column] = {}
     ignored: list[str] = []
     problems: list[CellProblem] = []
+    sizes = _bare_sizes(headings)
     for index, heading in enumerate(headings):
-        column = _column(index, heading)
+        column = Column(index, heading, sizes[heading]) if heading in sizes else _column(index, heading)
         if column is None:
             if heading:
                 ignored.append(heading)
@@ -155,6 +156,12 @@ def match_columns(headings: Sequence[str], *, line: int = 1) -> Columns:
     problems += _missing(by_field, line)
     problems += [problem for column in by_field.values() if (problem := _unit_problem(column, by_field, line))]
     return Columns(by_field, tuple(ignored), tuple(problems))
+
+
+def _bare_sizes(headings: Sequence[str]) -> dict[str, str]:
+    """Headings that are a size and nothing else ("4", "6", "14"), where two or three of a kind stand together."""
+    kinds = [{name for name in headings if _SIZES.get(name) in sizes} for sizes in (COUNTER_SIZES, MICROSCOPE_SIZES)]
+    return {name: _SIZES[name] for names in kinds if len(names) > 1 for name in names}
 
 
 def basis_of(text: str) -> Basis | None:
@@ -241,7 +248,7 @@ def _unit_reason(column: Column, *, has_basis: bool) -> tuple[str, str]:
     if column.field == "viscosity":
         return "temperature_missing", f"“{heading}” does not say at which temperature. Write “Viscosity 40 °C (mm²/s)”."
     if column.field in COUNT_FIELDS and column.basis is None and not has_basis:
-        return "basis_missing", f"“{heading}” has no unit. Write “per mL” or “per 100 mL” behind it."
+        return "basis_missing", f"“{heading}” has no unit. Counts need theirs in the heading: “per mL” or “per 100 mL”."
     if column.field == "water" and not column.unit:
         return "unit_missing", f"“{heading}” has no unit. Write “mg/kg”, “ppm” or “%” behind it."
     if column.field in _USUAL_UNITS:

@@ -3,7 +3,7 @@
 import re
 from dataclasses import dataclass
 from datetime import date, time
-from typing import Final
+from typing import Final, Literal
 
 from samples.problems import Problem
 
@@ -20,12 +20,20 @@ _NAMED: Final = re.compile(
 _TIME: Final = re.compile(r"(?P<hour>[0-9]{1,2})[:.h](?P<minute>[0-9]{2})(?:[:.](?P<second>[0-9]{2})(?:[.,][0-9]+)?)?")
 
 
+Order = Literal["", "either", "month_first"]
+
+
 @dataclass(frozen=True, slots=True)
 class ReadDate:
-    """``day`` and, where one was written, the time of day ``at``; or a ``problem``; or all None for an empty text."""
+    """``day`` and, where one was written, the time of day ``at``; or a ``problem``; or all None for an empty text.
+
+    ``order``: "either" where day and month could also be the other way round (3/4/2026; with dots the day always comes
+    first), "month_first" where only that makes a date.
+    """
 
     day: date | None = None
     at: time | None = None
+    order: Order = ""
     problem: Problem | None = None
 
 
@@ -47,14 +55,16 @@ def read_date(text: str) -> ReadDate:
     match = _YEAR_FIRST.fullmatch(cleaned) or _DAY_FIRST.fullmatch(cleaned) or _NAMED.fullmatch(cleaned)
     month = _month_of(match) if match is not None else None
     if match is None or month is None:
-        return _failed("date_unreadable", f"“{cleaned[:30]}” is not a date. Write it like 2026-11-09 or 9.11.2026.")
+        return _failed(
+            "date_unreadable", f"“{cleaned[:30]}” is not a date. Write it like 9 Nov 2026, 9.11.2026 or 2026-11-09."
+        )
     day = _day_of(match, month)
     clock = read_time(match["clock"] or "")
     if day is None or clock.problem is not None:
         return _failed("date_impossible", f"“{cleaned[:30]}” is not in the calendar. Check day, month and time.")
     if day.year < EARLIEST_YEAR:
         return _failed("date_too_old", f"“{cleaned[:30]}” is before {EARLIEST_YEAR}. Check the year.")
-    return ReadDate(day, clock.at)
+    return ReadDate(day, clock.at, _order(match))
 
 
 def read_time(text: str) -> ReadDate:
@@ -69,6 +79,15 @@ def read_time(text: str) -> ReadDate:
     if match is None or int(match["hour"]) > 23 or int(match["minute"]) > 59:
         return _failed("time_unreadable", f"“{cleaned[:30]}” is not a time of day. Write it like 07:40.")
     return ReadDate(at=time(int(match["hour"]), int(match["minute"])))
+
+
+def _order(match: re.Match[str]) -> Order:
+    if match.re is not _DAY_FIRST:
+        return ""
+    day, month = int(match["day"]), int(match["month"])
+    if month > 12:
+        return "month_first"
+    return "either" if day <= 12 and day != month and "." not in match[0][: match.start("year")] else ""
 
 
 def _month_of(match: re.Match[str]) -> int | None:

@@ -3,7 +3,7 @@
 Times are the site's own clock; the caller attaches the time zone.
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
 from datetime import date, datetime, time
 from decimal import Decimal
@@ -13,7 +13,7 @@ from typing import Final
 from fleet.codes import CodeError, IsoCode, parse_iso_code
 from samples.coding.iso4406 import Basis, code_from_counts
 from samples.intake.columns import COUNT_FIELDS, MEASURED_FIELDS, Column, Columns, basis_of
-from samples.intake.dates import read_date, read_time
+from samples.intake.dates import ReadDate, read_date, read_time
 from samples.intake.numbers import DecimalMark, ReadNumber, decimal_mark_of, read_number
 from samples.intake.tables import Table, TableRow
 from samples.problems import CellProblem, Problem
@@ -69,6 +69,7 @@ class _Row:
     row: TableRow
     columns: Columns
     decimal_mark: DecimalMark | None
+    month_first: bool = False
     problems: list[CellProblem] = field(default_factory=list)
     notes: list[CellProblem] = field(default_factory=list)
 
@@ -111,10 +112,12 @@ def read_rows(table: Table, columns: Columns, as_of: datetime) -> list[RowReadin
 
     Problem codes: those of `read_number`, `read_date`, `parse_iso_code`, `code_from_counts`, and ``reservoir_missing``,
     ``drawn_missing``, ``drawn_in_future``, ``result_missing``, ``too_many_cells``, ``basis_unreadable``,
-    ``amount_is_bound``. Note codes: ``bound_unknown``.
+    ``amount_is_bound``, ``date_order_unclear`` (3/4/2026 where other rows write the month first). Note codes:
+    ``bound_unknown``, ``date_day_first``.
     """
     mark = decimal_mark_of(cell for row in table.rows for cell in _number_cells(row, columns))
-    return [_read_row(_Row(row, columns, mark), as_of) for row in table.rows]
+    month_first = any(date.order == "month_first" for date in _dates(table, columns))
+    return [_read_row(_Row(row, columns, mark, month_first), as_of) for row in table.rows]
 
 
 def _read_row(row: _Row, as_of: datetime) -> RowReading:
@@ -148,6 +151,11 @@ def _read_row(row: _Row, as_of: datetime) -> RowReading:
     )
 
 
+def _dates(table: Table, columns: Columns) -> Iterator[ReadDate]:
+    column = columns.by_field.get("drawn")
+    return (read_date(row.cells[column.index]) for row in table.rows) if column is not None else iter(())
+
+
 def _number_cells(row: TableRow, columns: Columns) -> list[str]:
     return [row.cells[column.index] for name, column in columns.by_field.items() if name not in _TEXT_FIELDS]
 
@@ -166,6 +174,8 @@ def _drawn(row: _Row, as_of: datetime) -> tuple[date | None, time | None]:
         row.object("drawn", drawn.problem)
     elif drawn.day is None:
         row.object("drawn", Problem("drawn_missing", "The row has no date. Fill in when the sample was drawn."))
+    if drawn.order == "either":
+        _say_order(row, drawn)
     if clock.problem is not None:
         row.object("drawn_time", clock.problem)
     at = drawn.at or clock.at
@@ -173,6 +183,15 @@ def _drawn(row: _Row, as_of: datetime) -> tuple[date | None, time | None]:
         reason = f"The sample is dated after today ({as_of:%-d %b %Y}). Check the date."
         row.object("drawn", Problem("drawn_in_future", reason))
     return drawn.day, at
+
+
+def _say_order(row: _Row, drawn: ReadDate) -> None:
+    """Day first, and said so; but never where the file itself writes the month first elsewhere."""
+    if row.month_first:
+        reason = "Other rows of the file write the month first, this can be either. Write it like 2026-11-09."
+        row.object("drawn", Problem("date_order_unclear", reason))
+    else:
+        row.object("drawn", Problem("date_day_first", f"Read as {drawn.day:%-d %b %Y}, the day first."), row.notes)
 
 
 def _amount(row: _Row, name: str) -> Decimal | None:

@@ -13,6 +13,9 @@ MOST_ROWS: Final = 20_000
 MOST_BYTES: Final = 10 * 1024 * 1024
 DELIMITERS: Final = (",", ";", "\t", "|")
 
+# Sizes in µm that a heading may be without more: such a column lacks its unit, but it is no value.
+BARE_SIZES: Final = frozenset({"4", "6", "14", "5", "15"})
+
 _FOREIGN: Final = (
     (b"%PDF-", "a PDF document"),
     (b"PK\x03\x04", "a spreadsheet or ZIP file"),
@@ -170,7 +173,8 @@ def _checked_headings(raw: list[str]) -> tuple[str, ...]:
     while raw and not raw[-1]:
         raw = raw[:-1]
     named = [heading for heading in raw if heading]
-    if 2 * sum(read_number(heading).value is not None for heading in named) >= len(named):
+    values = [heading for heading in named if read_number(heading).value is not None and heading not in BARE_SIZES]
+    if 2 * len(values) >= len(named):
         raise ReadError(
             "heading_missing", "The first line holds values, not headings. Add a line that names the columns."
         )

@@ -36,6 +36,7 @@ def samples(request: HttpRequest) -> HttpResponseBase:
         "here": f"{request.path}?{_kept(request)}",
         "waiting": Sample.objects.in_doubt().count(),
         "narrowed": bool(_kept(request)),
+        "file": form.cleaned_data.get("intake"),
     }
     return render(request, "samples/samples.html", context)
 

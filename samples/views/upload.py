@@ -9,7 +9,9 @@ from django.conf import settings
 from django.contrib import messages
 from django.http import HttpRequest, HttpResponse
 from django.shortcuts import redirect, render
+from django.urls import reverse
 from django.utils import timezone
+from django.utils.html import format_html
 from django.views.decorators.csrf import csrf_exempt, csrf_protect
 
 from fleet.access import require, role_required
@@ -18,7 +20,7 @@ from fleet.models import Role
 from samples.forms.upload import ImportForm, UploadForm
 from samples.lab_files import FileCheck, IntakeError, check_file, commit_file, keep_for_import
 from samples.lab_rows import RowState, RowVerdict
-from samples.models import IntakeFile
+from samples.models import IntakeFile, Sample
 from samples.uploads import SizeGuard
 
 MOST_SHOWN = 500
@@ -80,12 +82,22 @@ def _import(request: HttpRequest, now: datetime) -> HttpResponse:
         form = UploadForm()
         messages.error(request, error.sentence)
         return _page(request, form, check=check, status=422)
-    waiting = check.counts[RowState.IN_DOUBT]
-    doubt = f" {waiting} of them in doubt: they wait for an engineer's word." if waiting else ""
-    messages.success(
-        request, f"{intake.added} sample{'' if intake.added == 1 else 's'} added from {intake.name}.{doubt}"
-    )
-    return redirect("samples")
+    messages.success(request, _went_in(intake, check.counts[RowState.IN_DOUBT]))
+    return redirect(_list_of(intake))
+
+
+def _went_in(intake: IntakeFile, waiting: int) -> str:
+    added = f"{intake.added:,} sample{'' if intake.added == 1 else 's'} added from {intake.name}."
+    if not waiting:
+        return added
+    link = f"{_list_of(intake)}&verdict={Sample.Verdict.IN_DOUBT}"
+    said = "waits" if waiting == 1 else "wait"
+    told = '{} <a href="{}">{} in doubt</a> {} for an engineer’s word.'
+    return format_html(told, added, link, f"{waiting:,}", said)
+
+
+def _list_of(intake: IntakeFile) -> str:
+    return f"{reverse('samples')}?intake={intake.pk}"
 
 
 def _page(request: HttpRequest, form: UploadForm, status: int = 200, **found: Any) -> HttpResponse:

@@ -74,6 +74,9 @@ def test_a_heading_that_nobody_knows_is_listed_and_ignored(heading: str) -> None
     [
         (["≥4 µm(c)"], ["basis_missing"]),
         (["≥4 µm(c)", "Count basis"], []),
+        (["4", "6", "14"], ["basis_missing"] * 3),
+        (["5", "15", "Count basis"], []),
+        (["4", "Fe"], []),
         (["Water"], ["unit_missing"]),
         (["Water (mg/L)"], ["density_missing"]),
         (["Fe (furlongs)"], ["unit_unknown"]),

@@ -68,3 +68,20 @@ def test_no_text_raises(text: str) -> None:
 @given(st.dates(date(1970, 1, 1), date(2099, 12, 31)))
 def test_an_iso_date_reads_back_as_itself(day: date) -> None:
     assert read_date(day.isoformat()).day == day
+
+
+@pytest.mark.parametrize(
+    ("text", "order"),
+    [
+        ("03/04/2026", "either"),
+        ("3-4-2026 07:40", "either"),
+        ("04/04/2026", ""),
+        ("13/04/2026", ""),
+        ("04/13/2026", "month_first"),
+        ("3.4.2026", ""),
+        ("2026-04-03", ""),
+        ("3 Apr 2026", ""),
+    ],
+)
+def test_it_is_known_whether_day_and_month_could_be_the_other_way_round(text: str, order: str) -> None:
+    assert read_date(text).order == order

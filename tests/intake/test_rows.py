@@ -10,6 +10,7 @@ from hypothesis import strategies as st
 from samples.intake.columns import match_columns
 from samples.intake.rows import RowReading, read_rows
 from samples.intake.tables import Table, TableRow, read_table
+from samples.intake.told import figures_in_words
 
 AS_OF = datetime(2026, 11, 20, 12, 0, tzinfo=UTC)
 
@@ -152,3 +153,29 @@ def test_no_cell_raises(cells: list[str]) -> None:
     (row,) = read_rows(table, match_columns(table.headings), AS_OF)
     assert all(problem.reason.endswith(".") and problem.code for problem in row.problems)
     assert row.readings or row.problems
+
+
+def test_a_date_that_could_be_either_is_read_day_first_with_a_note() -> None:
+    (row,) = read("Reservoir,Drawn,Fe", "Press 1,03/04/2026,12")
+    assert row.drawn_on == date(2026, 4, 3)
+    assert [(note.column, note.value, note.code) for note in row.notes] == [("Drawn", "03/04/2026", "date_day_first")]
+
+
+def test_it_is_not_guessed_where_the_file_writes_the_month_first() -> None:
+    first, second = read("Reservoir,Drawn,Fe", "Press 1,04/13/2026,12", "Press 1,03/04/2026,12")
+    assert first.is_usable
+    assert [problem.code for problem in second.problems] == ["date_order_unclear"]
+
+
+@pytest.mark.parametrize(
+    ("headings", "cells", "told"),
+    [
+        ("ISO 4406;Water (ppm);Viscosity 40", "18/17/13;140;45", "code, water, viscosity: 5 figures"),
+        ("P4 per mL;P6 per mL;Fe;Cu;TAN", "391;96;3;2;0.4", "counts, acid number, elements: 5 figures"),
+        ("Water (ppm);Fe", "140;", "water: 1 figure"),
+        ("Water (ppm);Fe", ";", ""),
+    ],
+)
+def test_what_was_read_is_told_in_words(headings: str, cells: str, told: str) -> None:
+    (row,) = read(f"Reservoir;Drawn;{headings}", f"Press 1;2026-11-09;{cells}")
+    assert figures_in_words(row.readings) == told

@@ -97,6 +97,10 @@ def test_what_is_no_table_says_why(data: bytes, code: str) -> None:
     assert refusal_of(data) == code
 
 
+def test_bare_sizes_are_headings_and_no_values() -> None:
+    assert read_table(b"4,6,14,Water\n2178,847,63,140\n").headings == ("4", "6", "14", "Water")
+
+
 def test_the_largest_number_of_rows_is_read() -> None:
     assert len(read_table(b"A,B\n" + b"1,2\n" * MOST_ROWS).rows) == MOST_ROWS
 

@@ -39,7 +39,7 @@ def run(path: Path, *options: str) -> str:
 def test_a_good_file_goes_in(path: Path) -> None:
     """AWEA RP 508, Figure A: these counts make 18/17/13."""
     told = run(path)
-    assert "line 2: adds: Press 4 · drive pack, 2026-05-20, 18/17/13." in told
+    assert "line 2: adds: Press 4 · drive pack, 20 May 2026, 18/17/13." in told
     assert "1 sample added." in told
     assert Sample.objects.get().intake == IntakeFile.objects.get()
 
@@ -112,4 +112,4 @@ def test_doubts_and_what_was_left_out_are_told(path: Path, press: Reservoir) -> 
     told: Any = run(path, "--dry-run")
     assert "Columns not understood, left out: Colour" in told
     assert "doubt: All counts fell by" in told
-    assert "left out: Water (mg/kg) “ND”" in told
+    assert "note: Water (mg/kg) “ND”" in told

@@ -53,7 +53,7 @@ def test_a_reader_may_not_upload(press: Reservoir) -> None:
 def test_checking_shows_the_verdict_and_saves_no_sample(client: Client) -> None:
     response = choose(client, lab_file(GOOD))
     assert [row.state for row in response.context["check"].rows] == [RowState.ADDS]
-    assert "1 of 1 rows adds a sample" in " ".join(response.content.decode().replace("</strong>", "").split())
+    assert "1 of 1 row adds a sample" in " ".join(response.content.decode().replace("</strong>", "").split())
     assert not Sample.objects.exists()
 
 
@@ -136,6 +136,7 @@ def test_one_wrong_row_keeps_all_out(client: Client) -> None:
         ("NO-1;2026-05-20;;;;2178;847;63;25", "No reservoir is called “NO-1”"),
         (";2026-05-20;;;;2178;847;63;25", "names no reservoir"),
         ("PR-104;2099-05-20;;;;2178;847;63;25", "after today"),
+        ("PR-104;2099-05-20;;Otherlab;;2178;847;63;25", "No laboratory is called “Otherlab”"),
         ("PR-104;yesterday;;;;2178;847;63;25", "is not a date"),
         ("PR-104;;;;;2178;847;63;25", "has no date"),
         ("PR-104;2026-05-20;;;;63;847;2178;25", "higher than that of the smaller one"),
@@ -293,3 +294,43 @@ def test_files_left_lying_for_a_day_are_swept(client: Client) -> None:
     PendingFile.objects.update(brought_at=timezone.now() - timedelta(days=2))
     choose(client, lab_file(GOOD, ""))
     assert PendingFile.objects.count() == 1
+
+
+def test_an_imported_file_leads_to_its_own_samples(client: Client, press: Reservoir) -> None:
+    builders.sample(press, datetime(2026, 4, 20, tzinfo=UTC), {"p4": 2178.0, "p6": 847.0, "p14": 63.0})
+    response = go_in(client, lab_file("PR-104;2026-05-20;;;;217800;84700;6300;25"))
+    intake = IntakeFile.objects.get()
+    assert response.redirect_chain == [(f"/samples/?intake={intake.pk}", 302)]
+    assert [sample.intake for sample, _ in response.context["rows"]] == [intake]
+    assert (
+        f'<a href="/samples/?intake={intake.pk}&amp;verdict=in_doubt">1 in doubt</a> waits' in response.content.decode()
+    )
+
+
+def test_a_date_that_could_be_either_is_told_at_the_row_and_once_for_the_file(client: Client) -> None:
+    page = choose(client, lab_file("PR-104;03/04/2026;;;;2178;847;63;25")).content.decode()
+    assert page.count("Read as 3 Apr 2026, the day first.") == 2
+    assert "Dates were read with the day first" in page
+
+
+def test_what_was_read_of_a_row_is_shown_before_it_goes_in(client: Client) -> None:
+    headings = "Reservoir;Drawn;ISO 4406;Water (mg/kg);Viscosity 40 °C"
+    response = choose(client, lab_file("PR-104;2026-05-20;18/17/13;140;45", headings=headings))
+    assert "code, water, viscosity: 5 figures" in response.content.decode()
+
+
+def test_bare_sizes_for_headings_are_asked_for_their_unit(client: Client) -> None:
+    response = choose(client, b"4,6,14,Water\n2178,847,63,140\n")
+    told = [cell.reason for cell in response.context["check"].columns]
+    assert any("Counts need theirs in the heading" in reason for reason in told)
+
+
+def test_a_file_is_never_said_to_be_kept(client: Client) -> None:
+    page = choose(client, b"").content.decode()
+    assert "1 thing to mend." in page
+    assert "is kept" not in page
+
+
+def test_one_wrong_row_is_told_in_the_singular(client: Client) -> None:
+    page = " ".join(choose(client, lab_file("NO-1;2026-05-20;;;;2178;847;63;25")).content.decode().split())
+    assert "1 of 1 row is wrong, so nothing was saved.</strong> Correct it and" in page

@@ -80,7 +80,7 @@ def _row_lines(row: RowVerdict) -> list[str]:
     where = f"{row.reservoir}, {row.drawn_at:%-d %b %Y}, {row.code or 'no code'}"
     lines = [f"line {row.line}: {row.state}: {where}. {row.remark}".rstrip()]
     lines += [f"line {row.line}:   doubt: {doubt.sentence} {doubt.settles}" for doubt in row.doubts]
-    return lines + [f"line {row.line}:   left out: {_cell(cell.column, cell.value)}{cell.reason}" for cell in row.notes]
+    return lines + [f"line {row.line}:   note: {_cell(cell.column, cell.value)}{cell.reason}" for cell in row.notes]
 
 
 def _samples(number: int) -> str:
