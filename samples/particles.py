@@ -21,21 +21,28 @@ BASIS_MISSING = Problem(
 
 @dataclass(frozen=True, slots=True)
 class TypedCounts:
-    """The counts as typed, in `basis`; with `microscope` the second and third are 5 and 15 µm."""
+    """The counts as typed, in `basis`; with `microscope` the second and third are 5 and 15 µm.
+
+    `by_counter` says that two pasted numbers come from an automatic counter that left out 4 µm.
+    """
 
     counts: Three = (None, None, None)
     basis: Basis | None = None
     counted_ml: Decimal | None = None
     microscope: bool = False
+    by_counter: bool = False
 
 
 @dataclass(slots=True)
 class Particles:
-    """What was understood. `problems` name the field they belong to; with any of them nothing else counts."""
+    """What was understood, and `notes` on how the paste was read. `problems` name the field they belong to;
+    with any of them nothing else counts.
+    """
 
     readings: list[Reading] = field(default_factory=list)
     stated_code: IsoCode | None = None
     problems: list[tuple[str, Problem]] = field(default_factory=list)
+    notes: list[str] = field(default_factory=list)
 
     def object(self, name: str, code: str, sentence: str) -> None:
         self.problems.append((name, Problem(code, sentence)))
@@ -45,11 +52,14 @@ def read_particles(pasted: Pasted, typed: TypedCounts, usual_counted_ml: float |
     """Counts, or the code where there are no counts, as readings.
 
     `usual_counted_ml` [mL] is the laboratory's volume, taken where neither the paste nor the field says one. Problem
-    fields: paste, p4, basis, counted_ml, microscope.
+    fields: paste, p4, basis, counted_ml, microscope, by_counter.
     """
-    found = Particles(stated_code=pasted.code)
+    found = Particles(stated_code=pasted.code, notes=_notes(pasted, typed))
     if pasted.problem is not None:
         found.problems.append(("paste", pasted.problem))
+        return found
+    if typed.microscope and typed.by_counter:
+        found.object("by_counter", "counter_and_microscope", "Choose the counter or the microscope, not both.")
         return found
     counts = _agreed_counts(pasted, typed, found)
     if counts is None:
@@ -58,8 +68,26 @@ def read_particles(pasted: Pasted, typed: TypedCounts, usual_counted_ml: float |
     basis = _agreed_basis(pasted, typed, found)
     volume = _agreed_volume(pasted, typed, usual_counted_ml, found)
     if basis is not None and not found.problems:
-        _code_them(counts, basis, volume, typed.microscope or pasted.microscope, found)
+        _code_them(counts, basis, volume, _by_microscope(pasted, typed), found)
     return found
+
+
+def _by_microscope(pasted: Pasted, typed: TypedCounts) -> bool:
+    return typed.microscope or (pasted.microscope and not typed.by_counter)
+
+
+def _notes(pasted: Pasted, typed: TypedCounts) -> list[str]:
+    notes = []
+    if pasted.microscope and not (typed.microscope or typed.by_counter):
+        what = "a microscope code" if pasted.counts is None else "microscope counts"
+        notes.append(
+            f"Read as {what}, 5 and 15 µm. If an automatic counter left out 4 µm, say so below the counts: "
+            "then they are 6 and 14 µm."
+        )
+    if pasted.unread:
+        what = "code was" if pasted.counts is None else "counts were"
+        notes.append(f"Only the {what} read from the line. Type the other figures below.")
+    return notes
 
 
 def _agreed_counts(pasted: Pasted, typed: TypedCounts, found: Particles) -> Three | None:
@@ -136,4 +164,6 @@ def _read_code(pasted: Pasted, typed: TypedCounts, found: Particles) -> None:
         said = "A code of three numbers comes from a counter. Take back the microscope, or paste the two numbers."
         found.object("microscope", "microscope_has_no_four", said)
         return
-    found.readings = readings_from_code(pasted.code, microscope=typed.microscope or None)
+    found.readings = readings_from_code(
+        pasted.code, microscope=typed.microscope or (False if typed.by_counter else None)
+    )

@@ -54,6 +54,10 @@ _PART: Final = r"(?:\*|-|(?:≥|>=|>)?\s*[0-9]{1,3})"
 _CODE: Final = re.compile(rf"(?<![0-9/.,*-]){_PART}\s*/\s*{_PART}(?:\s*/\s*{_PART})?(?![0-9]|\s*/|[.,:][0-9])")
 _CODE_WORD: Final = re.compile(r"\bcode\b[^0-9*-]{0,12}\Z", re.IGNORECASE)
 _SLASHED: Final = re.compile(rf"(?<![0-9/]){_NUMBER}\s*/\s*{_NUMBER}(?:\s*/\s*{_NUMBER})?(?![0-9]|\s*/)")
+_MOMENT: Final = re.compile(
+    r"[0-9]{1,4}([-/.])[0-9]{1,2}\1[0-9]{2,4}|[0-9]{1,2}\.?\s+[a-z]{3,9}\.?\s+[0-9]{4}|[0-9]{1,2}:[0-9]{2}(?::[0-9]{2})?",
+    re.IGNORECASE,
+)
 _NEGATIVE: Final = re.compile(r"(?:^|[\s;,|:])-\s?[0-9]")
 _BOUND: Final = re.compile(r"[<≤]\s*=?\s*[0-9]")
 _WORDS: Final = re.compile(r"[^\W\d_]+")
@@ -63,7 +67,8 @@ _WORDS: Final = re.compile(r"[^\W\d_]+")
 class Pasted:
     """What was understood. ``counts`` are as written, in ``basis``; both are None where the text has only a code.
 
-    With ``microscope`` the first count is None, the others are 5 and 15 µm. With a ``problem`` nothing else counts.
+    With ``microscope`` the first count is None, the others are 5 and 15 µm. With ``unread`` there are more figures in
+    the text, which nobody read. With a ``problem`` nothing else counts.
     """
 
     code: IsoCode | None = None
@@ -71,6 +76,7 @@ class Pasted:
     basis: Basis | None = None
     microscope: bool = False
     counted_ml: Decimal | None = None
+    unread: bool = False
     problem: Problem | None = None
 
     @property
@@ -114,12 +120,27 @@ def read_pasted(text: str) -> Pasted:
     if len(bases) > 1:
         return _failed("paste_two_units", "Both “per mL” and “per 100 mL” are in the text. Paste counts with one unit.")
     basis = bases[0] if bases else None
-    found = _understand(_STANDARD.sub(" code ", tidy), basis)
+    named = _STANDARD.sub(" code ", tidy)
+    found = _understand(named, basis)
     if found.problem is not None:
         return found
     return replace(
-        found, basis=basis if found.counts else None, counted_ml=counted_ml, microscope=_is_microscope(found)
+        found,
+        basis=basis if found.counts else None,
+        counted_ml=counted_ml,
+        microscope=_is_microscope(found),
+        unread=_has_more_figures(named, found),
     )
+
+
+def _has_more_figures(text: str, found: Pasted) -> bool:
+    """Whether figures are left when what was understood and every date is taken out. Bare counts take all."""
+    slashed = found.counts is not None and _SLASHED.search(_without_codes(text)) is not None
+    if found.counts is not None and not slashed and _labelled_counts(text) is None:
+        return False
+    bare = _SIZE_LIST.sub(" ", _without_labels(text)) if found.counts is not None else _SIZE_LIST.sub(" ", text)
+    rest = re.sub(_SIZE, " ", _SLASHED.sub(" ", _CODE.sub(" ", _MOMENT.sub(" ", bare))), flags=re.IGNORECASE)
+    return re.search(r"(?<![\w.-])[0-9]", rest) is not None
 
 
 def _understand(text: str, basis: Basis | None) -> Pasted:

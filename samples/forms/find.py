@@ -37,6 +37,11 @@ class FindForm(forms.Form):
         exact = [reservoir for reservoir in found if reservoir.tag == tag]
         return (exact or found)[0] if exact or len(found) == 1 else None
 
+    def only_match(self) -> Reservoir | None:
+        """The reservoir meant where what was typed fits one alone."""
+        found = self.matches() if self.typed and not self.asked_tag else []
+        return found[0] if len(found) == 1 else None
+
     def matches(self) -> list[Reservoir]:
         """The first reservoirs in service that carry every word typed; all of them, from A, before anything is."""
         found: Any = Reservoir.objects.active().with_place()

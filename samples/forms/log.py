@@ -41,7 +41,7 @@ class LogForm(forms.Form):
 
     reservoir = forms.CharField(max_length=40, widget=forms.HiddenInput())
     point = forms.ModelChoiceField(SamplePoint.objects.none(), label="Sample point", empty_label=None)
-    drawn_on = DayField(label="Day drawn")
+    drawn_on = DayField(label="Drawn")
     drawn_time = ClockField(label="Time drawn", required=False)
     oil_temperature_c = AmountField(label="Oil temperature", least=-40, most=200, unit="°C")
     running = forms.TypedChoiceField(
@@ -63,6 +63,7 @@ class LogForm(forms.Form):
     basis = forms.ChoiceField(choices=BASES, required=False, label="Counts are")
     counted_ml = AmountField(label="Counted, mL", least=0.001, most=10_000, unit="mL")
     microscope = forms.BooleanField(label="5 and 15 µm under the microscope", required=False)
+    by_counter = forms.BooleanField(label="Two pasted numbers are 6 and 14 µm", required=False)
     water = NumberField(label="Water")
     water_unit = forms.ChoiceField(choices=WATER_UNITS, required=False, initial="mg/kg", label="Unit of water")
     viscosity_40 = NumberField(label="Viscosity at 40 °C")
@@ -85,6 +86,8 @@ class LogForm(forms.Form):
         for key in ELEMENTS:
             self.fields[key] = NumberField(label=f"{known[key].name}, {known[key].symbol}")
         self._say_plainly()
+        if not self.is_bound:
+            self.fields["point"].widget.attrs["autofocus"] = True
         if history is not None:
             points = SamplePoint.objects.filter(reservoir=history.reservoir, retired_on=None)
             self._chooser("point").queryset = points
@@ -133,13 +136,15 @@ class LogForm(forms.Form):
             self.add_error("drawn_on", ValidationError(said, code="drawn_in_future"))
             return
         try:
-            self.moment = drawn_moment(day, self.cleaned_data["drawn_time"], zone, self.now)
+            moment = drawn_moment(day, self.cleaned_data["drawn_time"], zone, self.now)
         except ValueError as error:
             self.add_error("drawn_time", ValidationError(str(error), code="clock_gap"))
             return
-        if self.moment > self.now:
+        if moment > self.now:
             said = f"That time is still to come; it is {here:%H:%M} at the site. Check the time."
             self.add_error("drawn_time", ValidationError(said, code="drawn_in_future"))
+            return
+        self.moment = moment
 
     def _clean_particles(self) -> None:
         if self.errors.keys() & {"paste", "p4", "p6", "p14", "basis", "counted_ml"}:
@@ -159,6 +164,7 @@ class LogForm(forms.Form):
             basis=chosen.get("basis") or None,
             counted_ml=None if volume is None else Decimal(repr(volume)),
             microscope=bool(chosen.get("microscope")),
+            by_counter=bool(chosen.get("by_counter")),
         )
 
     def _clean_measured(self) -> None:
@@ -197,7 +203,9 @@ class LogForm(forms.Form):
         )
 
     def say(self, error: EntryError) -> None:
-        """Show at its field what the subject module refuses."""
+        """Show at its field what the subject module refuses, once."""
+        if any(error.sentence in sentences for sentences in self.errors.values()):
+            return
         name = SHOWN_AT.get(error.field, error.field)
         self.add_error(name if name in self.fields else None, ValidationError(error.sentence, code=error.code))
 

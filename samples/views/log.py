@@ -33,7 +33,7 @@ def log(request: HttpRequest) -> HttpResponse:
     if request.method == "POST":
         return _posted(request, now)
     find = FindForm(request.GET)
-    found = find.scanned()
+    found = find.scanned() or find.only_match()
     if found is None:
         return render(request, "samples/log_find.html", {"find": find, "found": find.matches()})
     if request.GET.get("reservoir") != found.tag:
@@ -71,7 +71,10 @@ def _posted(request: HttpRequest, now: datetime) -> HttpResponse:
         if request.POST["then"] == "next":
             return redirect("log")
         return redirect("sample", sample.pk)
-    return _form_page(request, form, _panel(form, known, now), status=422 if form.errors else 200)
+    panel = _panel(form, known, now)
+    for error in panel.errors if panel else ():
+        form.say(error)
+    return _form_page(request, form, panel, status=422 if form.errors else 200)
 
 
 def _saved(request: HttpRequest, form: LogForm, now: datetime) -> Sample | None:
@@ -106,7 +109,9 @@ def _panel(form: LogForm, known: Mapping[str, Measurand], now: datetime) -> Pane
 
 
 def _form_page(request: HttpRequest, form: LogForm, panel: Panel | None, status: int = 200) -> HttpResponse:
-    context = {"form": form, "panel": panel, "summary": summary(form), "wrong": [], "chosen": form.history is not None}
+    # What was asked for is the panel: the keyboard goes there, unless something has to be mended first.
+    read_first = form.is_bound and not form.errors
+    context = {"form": form, "panel": panel, "summary": summary(form), "wrong": [], "read_first": read_first}
     return render(request, "samples/log.html", context | _beside(form), status=status)
 
 

@@ -121,3 +121,22 @@ def test_no_text_that_looks_like_a_result_raises(text: str) -> None:
     pasted = read_pasted(text)
     if pasted.problem is None and pasted.counts is not None:
         code_from_counts(*pasted.counts)
+
+
+@pytest.mark.parametrize(
+    ("text", "unread"),
+    [
+        ("ISO 4406: 20/18/15, water 250 ppm, visc 31.9, Fe 12 ppm", True),
+        ("4 µm 2178 6 µm 847 14 µm 63 particles/ml, water 250 ppm", True),
+        ("39120/9610/710 /100 ml, water 250 ppm", True),
+        ("ISO 4406:2021 19/17/13", False),
+        ("PR-104 of 3.4.2026 10:15: 19/17/13, regards", False),
+        ("18/17/13 (4 µm(c)/6 µm(c)/14 µm(c)), counted 25 mL", False),
+        ("39120 9610 710 /100 ml", False),
+        ("4 µm 2178 6 µm 847 14 µm 63 particles/ml", False),
+    ],
+)
+def test_it_is_known_whether_figures_of_the_line_were_left_unread(text: str, unread: bool) -> None:
+    pasted = read_pasted(text)
+    assert pasted.problem is None
+    assert pasted.unread is unread

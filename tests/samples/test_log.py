@@ -46,7 +46,22 @@ def test_a_retired_reservoir_is_not_found(client: Client) -> None:
 
 
 def test_the_search_works_as_a_plain_form(client: Client, press: Reservoir) -> None:
+    builders.reservoir("cooler pack", tag="PR-105")
     assert b"?reservoir=PR-104" in client.get(LOG, {"q": "press"}).content
+
+
+def test_a_name_that_fits_one_reservoir_opens_the_form_at_once(client: Client, press: Reservoir) -> None:
+    builders.reservoir("cooler pack", tag="PR-105")
+    assert client.get(LOG, {"q": "drive"})["Location"] == "/log/?reservoir=PR-104"
+
+
+def test_the_first_field_has_the_keyboard_and_after_a_check_the_panel(client: Client, press: Reservoir) -> None:
+    fresh = client.get(LOG, {"reservoir": "PR-104"}).content.decode()
+    checked = client.post(LOG, typed(press, then="check", water="140")).content.decode()
+    assert '<select name="point" autofocus' in fresh
+    assert 'tabindex="-1" autofocus' not in fresh
+    assert checked.count("autofocus") == 1
+    assert 'tabindex="-1" autofocus' in checked
 
 
 def test_a_scanned_label_opens_the_form_at_once(client: Client, press: Reservoir) -> None:
@@ -159,6 +174,7 @@ def test_the_site_clock_is_meant(client: Client) -> None:
         ("paste", {"paste": "3000 500 7 per mL", "p4": "9", "p6": "8", "p14": "7", "basis": "per_ml"}, "Clear the one"),
         ("p4", {"p4": "9", "p6": "8", "basis": "per_ml", "microscope": "on"}, "no 4 µm size"),
         ("microscope", {"paste": "19/17/13", "microscope": "on"}, "comes from a counter"),
+        ("by_counter", {"paste": "19/17", "microscope": "on", "by_counter": "on"}, "not both"),
         ("water", {"water": "wet"}, "is not a number"),
         ("water", {"water": "101", "water_unit": "%"}, "cannot be"),
         ("water", {"water": "9" * 39}, "beyond any measured value"),
@@ -276,3 +292,36 @@ def test_a_code_beside_other_counts_is_doubted(client: Client, press: Reservoir)
 def test_the_folded_part_stands_open_when_something_is_in_it(client: Client, press: Reservoir) -> None:
     assert '<details class="more">' in client.get(LOG, {"reservoir": "PR-104"}).content.decode()
     assert '<details class="more" open>' in client.post(LOG, typed(press, fe="rusty")).content.decode()
+
+
+def test_figures_of_a_line_that_were_not_read_are_told(client: Client, press: Reservoir) -> None:
+    line = "ISO 4406: 20/18/15, water 250 ppm, visc 31.9, Fe 12 ppm"
+    panel = client.post(reverse("log-preview"), typed(press, paste=line)).content.decode()
+    assert "Only the code was read from the line. Type the other figures below." in panel
+
+
+def test_two_numbers_are_read_as_microscope_and_said_to_be(client: Client, press: Reservoir) -> None:
+    panel = client.post(reverse("log-preview"), typed(press, paste="19/17")).content.decode()
+    assert "Read as a microscope code, 5 and 15 µm." in panel
+
+
+@pytest.mark.parametrize("pasted", ["19/17", "3900 960 per mL"])
+def test_a_counter_without_four_micrometres_can_be_chosen(client: Client, press: Reservoir, pasted: str) -> None:
+    client.post(LOG, typed(press, paste=pasted, by_counter="on"))
+    assert set(Result.objects.values_list("measurand__key", flat=True)) == {"p6", "p14"}
+
+
+def test_everything_to_mend_is_counted_and_listed_once(client: Client, press: Reservoir) -> None:
+    """What the form refuses and what the checks refuse, on one list."""
+    response = client.post(LOG, typed(press, water="101", water_unit="%", acid_number="sour"))
+    assert len(response.context["summary"]) == 2
+    page = response.content.decode()
+    assert "2 things to mend" in page
+    assert page.count("Cannot be saved like this.") == 1
+
+
+def test_a_moment_to_come_is_told_once(client: Client, press: Reservoir) -> None:
+    soon = when(timezone.now() + timedelta(minutes=2))
+    panel = client.post(reverse("log-preview"), typed(press, water="1", **soon)).content.decode()
+    assert panel.count("Cannot be saved like this.") == 1
+    assert panel.count("still to come") == 1
