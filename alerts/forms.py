@@ -6,6 +6,9 @@ from django import forms
 from django.db.models import Q, QuerySet
 
 from alerts.models import Alert, Delivery, Rule, Subscription
+from fleet.forms.base import PercentField
+from fleet.forms.places import area_choices
+from fleet.forms.words import speak_plainly
 from fleet.models import Area, Person, Site
 
 STATES = [
@@ -28,11 +31,16 @@ class AlertFilter(forms.Form):
 
     def __init__(self, *args: Any, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
-        areas = Area.objects.select_related("site")
-        choices = [("", "All areas"), *((area.pk, f"{area.name}, {area.site.name}") for area in areas)]
-        cast(forms.ChoiceField, self.fields["area"]).choices = choices
+        areas = area_choices(Area.objects.select_related("site"))
+        cast(forms.ChoiceField, self.fields["area"]).choices = [("", "All areas"), *areas]
         for name in ("state", "family", "area"):
             self.fields[name].widget.attrs["data-submit-on-change"] = ""
+
+    @property
+    def is_narrowed(self) -> bool:
+        """Whether more is asked for than a state."""
+        chosen = self.cleaned_data if self.is_valid() else {}
+        return any(chosen.get(name) for name in ("family", "area", "q"))
 
     def narrow(self, alerts: QuerySet[Alert]) -> QuerySet[Alert]:
         """The alerts asked for; open ones where nothing, or nothing that exists, is asked for."""
@@ -67,7 +75,7 @@ class CloseForm(forms.Form):
     reason = forms.ChoiceField(
         label="Why",
         choices=[("", "Choose"), *(pair for pair in Alert.CloseReason.choices if pair[0] != "shown_over")],
-        error_messages={"required": "Choose why it is closed."},
+        error_messages={"required": "Choose why it is closed.", "invalid_choice": "Choose one of these reasons."},
     )
     note = forms.CharField(
         label="What was found",
@@ -79,7 +87,14 @@ class CloseForm(forms.Form):
 
 
 class RuleForm(forms.ModelForm[Rule]):
-    """One rule; figures that its kind does not know are left out."""
+    """One rule; figures that its kind does not know are left out. A chance is in per cent here, as on every page."""
+
+    least_chance = PercentField(
+        label="or chance at least, %",
+        required=False,
+        help_text="Forecast: chance of passing before the next planned sample, 5 to 95 %.",
+        error_messages={"min_value": "Must be 5 %% or more.", "max_value": "Must be 95 %% or less."},
+    )
 
     figures = {
         Rule.Kind.FORECAST: ("within_days", "least_chance"),
@@ -96,6 +111,7 @@ class RuleForm(forms.ModelForm[Rule]):
         for name in ("within_days", "least_chance", "grace_days"):
             if name not in known:
                 del self.fields[name]
+        speak_plainly(self)
         for name in ("least_criticality", *known):
             self.fields[name].widget.attrs["class"] = "short"
 
@@ -120,7 +136,8 @@ class MailChoiceForm(forms.Form):
     def __init__(self, *args: Any, **kwargs: Any) -> None:
         super().__init__(*args, **kwargs)
         places = [(f"site-{site.pk}", f"all of {site.name}") for site in Site.objects.all()]
-        places += [(f"area-{area.pk}", str(area)) for area in Area.objects.all()]
+        areas = area_choices(Area.objects.select_related("site"))
+        places += [(f"area-{key}", name) for key, name in areas]
         cast(forms.ChoiceField, self.fields["where"]).choices = places
 
     def add_for(self, person: Person) -> bool:

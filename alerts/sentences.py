@@ -54,14 +54,24 @@ def line_text(outlook: OutlookFacts, line: str) -> str:
     return f"{line} {_figure_text(outlook, high)}"
 
 
+def ahead_text(outlook: OutlookFacts) -> str:
+    """What may come, by the side that the value is nearer to: may pass its limit 15; may fall below its limit 3.0."""
+    low, high = _line(outlook, "limit")
+    if low is not None and (high is None or _nearer_low(outlook, low, high)):
+        return f"may fall below its limit {_figure_text(outlook, low)}"
+    return f"may pass its {line_text(outlook, 'limit')}"
+
+
 def headline(finding: Finding, zone: tzinfo) -> str:
-    """≥14 µm(c) code 17, limit 15. At most 160 characters."""
+    """≥14 µm(c) code 17, limit 15; or, of a forecast, ≥4 µm(c) code 18 now, may pass its limit 18: 22 % chance by
+    19 Dec 2026. At most 160 characters.
+    """
     outlook = finding.speaker
     if outlook is None:
         due = f"Sample due {day_text(finding.due_at, zone)}" if finding.due_at else "The planned sample"
         return f"{due} has not come"
-    text = f"{short_name(outlook)} {value_text(outlook)}, {line_text(outlook, CERTAIN_LINE[finding.kind])}"
-    return (text if finding.kind is not Kind.FORECAST else f"{text}, {_forecast_words(outlook, zone)}")[:160]
+    text = _spoken(outlook, finding.kind)
+    return (text if finding.kind is not Kind.FORECAST else f"{text}{_forecast_words(outlook, zone)}")[:160]
 
 
 def evidence(finding: Finding, zone: tzinfo) -> str:
@@ -172,23 +182,30 @@ def chance_text(chance: float) -> str:
 def _forecast_words(outlook: OutlookFacts, zone: tzinfo) -> str:
     median, due = outlook.runway_median, outlook.next_planned_at
     if median is not None and (outlook.chance is None or due is None or median <= due):
-        return f"passes it about {day_text(median, zone)}"
+        return f" about {day_text(median, zone)}"
     by = f"by {day_text(due, zone)}" if due else "before the next sample"
-    return f"{chance_text(outlook.chance or 0.0)} chance of passing it {by}"
+    return f": {chance_text(outlook.chance or 0.0)} chance {by}"
+
+
+def _spoken(outlook: OutlookFacts, kind: Kind) -> str:
+    """The value and the line it speaks about. A value that is inside yet stands as what it is now."""
+    if kind is Kind.FORECAST:
+        return f"{short_name(outlook)} {value_text(outlook)} now, {ahead_text(outlook)}"
+    return f"{short_name(outlook)} {value_text(outlook)}, {line_text(outlook, CERTAIN_LINE[kind])}"
 
 
 def _companions(companions: Sequence[Speaker]) -> str:
-    said = [
-        f"{short_name(s.outlook)} {value_text(s.outlook)}, {line_text(s.outlook, CERTAIN_LINE[s.kind])}"
-        for s in companions
-    ]
+    said = [_spoken(speaker.outlook, speaker.kind) for speaker in companions]
     return f"Also: {'; '.join(said)}." if said else ""
 
 
 def _overdue_evidence(finding: Finding, zone: tzinfo) -> str:
-    due = f"The sample planned for {day_text(finding.due_at, zone)} has not come. " if finding.due_at else ""
-    last = f"The last one was drawn {day_text(finding.drawn_at, zone)}." if finding.drawn_at else "There is none."
-    return f"{due}{last}"
+    due = day_text(finding.due_at, zone) if finding.due_at else ""
+    if finding.drawn_at is None:
+        first = f"The first sample, planned for {due}, has not come. " if due else ""
+        return f"{first}No sample of this reservoir is on record yet."
+    missing = f"The sample planned for {due} has not come. " if due else ""
+    return f"{missing}The last one was drawn {day_text(finding.drawn_at, zone)}."
 
 
 def _count_code(outlook: OutlookFacts) -> str:

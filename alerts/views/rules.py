@@ -11,6 +11,7 @@ from alerts.defaults import ensure_rules
 from alerts.evaluation import judge_site_again
 from alerts.forms import RuleForm
 from fleet.access import require
+from fleet.forms.base import summary
 from fleet.models import Role, Site
 
 
@@ -31,7 +32,8 @@ def rules(request: HttpRequest) -> HttpResponse:
         messages.success(request, "Saved. Every reservoir of the site is judged again within a minute.")
         return redirect(f"{reverse('rules')}?site={site.pk}")
     may_edit = request.user.is_authenticated and request.user.may_act_as(Role.ENGINEER)
-    context = {"sites": sites, "site": site, "forms": forms, "may_edit": may_edit}
+    faults = [line for form in forms for line in summary(form)]
+    context = {"sites": sites, "site": site, "forms": forms, "may_edit": may_edit, "summary": faults}
     return render(request, "alerts/rules.html", context, status=422 if posted is not None else 200)
 
 

@@ -41,6 +41,17 @@ class FigureField(forms.FloatField):
             raise ValidationError(self.error_messages["invalid"], code="invalid", params={"value": value}) from error
 
 
+class PercentField(FigureField):
+    """A share of 1 that is written and shown in per cent: 0.2 is 20."""
+
+    def to_python(self, value: Any) -> float | None:  # type: ignore[override]
+        percent = super().to_python(value)
+        return None if percent is None else percent / 100
+
+    def prepare_value(self, value: Any) -> Any:
+        return f"{100 * value:.10g}" if isinstance(value, int | float) else value
+
+
 class SiteTimeField(forms.DateTimeField):
     """Date and time as the site's clock shows them; the form turns it into a moment once it knows the site."""
 

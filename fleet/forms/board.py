@@ -8,6 +8,7 @@ from django import forms
 from django.db.models import Q
 
 from fleet.board import FORECAST_DAYS, coming_soon
+from fleet.forms.places import area_choices
 from fleet.models import Area, Fluid, Reservoir, ReservoirClass, StandingWord
 from fleet.querysets import ReservoirQuerySet
 
@@ -38,7 +39,7 @@ class BoardFilter(forms.Form):
         areas = list(Area.objects.select_related("site"))
         sites = sorted({(area.site_id, area.site.name) for area in areas}, key=lambda site: site[1])
         self._offer("site", "All sites", sites)
-        self._offer("area", "All areas", [(area.pk, area.name) for area in areas])
+        self._offer("area", "All areas", area_choices(areas))
         self._offer("fluid", "All fluids", Fluid.objects.values_list("pk", "name"))
         for name in ("site", "area", "kind", "fluid", "show"):
             self.fields[name].widget.attrs["data-submit-on-change"] = ""

@@ -1,11 +1,22 @@
 """Forms of where the oil is."""
 
 import zoneinfo
+from collections.abc import Iterable
 
 from django import forms
 
 from fleet.forms.base import PlantForm, PlantMeta
 from fleet.models import Area, Machine, Site
+
+
+def area_choices(areas: Iterable[Area]) -> list[tuple[int, str]]:
+    """Areas to choose from, by their names; where there are several sites, the site's name goes in front.
+
+    The areas come with their sites.
+    """
+    found = list(areas)
+    several = len({area.site_id for area in found}) > 1
+    return [(area.pk, f"{area.site.name}: {area.name}" if several else area.name) for area in found]
 
 
 class SiteForm(PlantForm):

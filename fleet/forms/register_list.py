@@ -4,6 +4,7 @@ from typing import Any, cast
 
 from django import forms
 
+from fleet.forms.places import area_choices
 from fleet.models import Area, ReservoirClass
 
 
@@ -19,7 +20,7 @@ class ListFilter(forms.Form):
     def __init__(self, *args: Any, with_area: bool, with_class: bool, **more: Any) -> None:
         super().__init__(*args, **more)
         if with_area:
-            areas = Area.objects.values_list("pk", "name")
+            areas = area_choices(Area.objects.select_related("site"))
             cast(forms.ChoiceField, self.fields["area"]).choices = [("", "All areas"), *areas]
         for name, wanted in (("area", with_area), ("kind", with_class)):
             self.fields[name].widget.attrs["data-submit-on-change"] = ""

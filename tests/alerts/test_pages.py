@@ -79,7 +79,18 @@ def test_the_list_can_be_narrowed_to_an_area() -> None:
 
 
 def test_an_empty_list_says_what_opens_an_alert() -> None:
-    assert "An alert opens when a rule speaks" in text(logged_in(), reverse("alerts"))
+    page = text(logged_in(), reverse("alerts"))
+    assert "No alert is open. An alert opens when a rule speaks" in page
+    assert "No open alert fits what is asked for." in text(logged_in(), reverse("alerts") + "?q=press")
+
+
+def test_areas_carry_their_site_in_front_only_where_there_are_several() -> None:
+    builders.area("Press hall")
+    assert ">Press hall</option>" in text(logged_in(), reverse("alerts"))
+    builders.area("Yard", at=builders.site("Far works"))
+    page = text(logged_in(), reverse("alerts"))
+    assert ">Test works: Press hall</option>" in page
+    assert ">Far works: Yard</option>" in page
 
 
 def test_the_list_comes_as_csv_with_formulas_disarmed() -> None:
@@ -191,7 +202,7 @@ def test_the_forms_stand_only_before_those_who_may_use_them() -> None:
     [
         ({"reason": "other"}, "Say what was found or decided"),
         ({"note": "done"}, "Choose why it is closed."),
-        ({"reason": "shown_over", "note": "it is"}, "not one of the available choices"),
+        ({"reason": "shown_over", "note": "it is"}, "Choose one of these reasons."),
     ],
 )
 def test_closing_without_a_reason_or_a_word_is_refused(posted: dict[str, str], said: str) -> None:
@@ -244,8 +255,10 @@ def test_changed_rules_have_every_reservoir_judged_again() -> None:
     ("wrong", "said"),
     [
         ({"forecast-within_days": "", "forecast-least_chance": ""}, "Give a number of days, a chance, or both."),
-        ({"forecast-least_chance": "2"}, "less than or equal to 0.95"),
-        ({"overdue-grace_days": "-1"}, "greater than or equal to 0"),
+        ({"forecast-least_chance": "98"}, "Must be 95 % or less."),
+        ({"forecast-least_chance": "0.2"}, "Must be 5 % or more."),
+        ({"forecast-least_chance": "often"}, "“often” is not a number."),
+        ({"overdue-grace_days": "-1"}, "Must be 0 or more."),
     ],
 )
 def test_a_rule_that_cannot_be_is_refused_at_its_field(wrong: dict[str, str], said: str) -> None:
@@ -253,7 +266,24 @@ def test_a_rule_that_cannot_be_is_refused_at_its_field(wrong: dict[str, str], sa
     answer = logged_in(Role.ENGINEER).post(reverse("rules"), RULES | wrong)
     assert answer.status_code == 422
     assert said in answer.content.decode()
+    assert "<strong>Not saved.</strong> 1 thing to mend" in answer.content.decode()
     assert Rule.objects.get(kind="forecast").within_days == 30
+
+
+def test_a_chance_is_written_and_shown_in_per_cent_and_kept_as_a_share() -> None:
+    builders.site()
+    client = logged_in(Role.ENGINEER)
+    assert 'name="forecast-least_chance" value="20"' in text(client, reverse("rules"))
+    client.post(reverse("rules"), RULES | {"forecast-least_chance": "7,5"})
+    assert Rule.objects.get(kind="forecast").least_chance == 0.075
+    assert 'name="forecast-least_chance" value="7.5"' in text(client, reverse("rules"))
+
+
+@pytest.mark.parametrize(("written", "kept"), [("5", 0.05), ("95", 0.95)])
+def test_the_ends_of_what_a_chance_may_be_are_allowed(written: str, kept: float) -> None:
+    builders.site()
+    logged_in(Role.ENGINEER).post(reverse("rules"), RULES | {"forecast-least_chance": written})
+    assert Rule.objects.get(kind="forecast").least_chance == kept
 
 
 def test_the_rules_page_without_a_site_says_so() -> None:

@@ -7,7 +7,7 @@ from zoneinfo import ZoneInfo
 import pytest
 
 from alerts import advice, sentences
-from alerts.rules import Kind, OutlookFacts
+from alerts.rules import Finding, Kind, OutlookFacts
 
 NOW = datetime(2026, 6, 1, 12, tzinfo=UTC)
 
@@ -96,6 +96,54 @@ def test_a_runway_is_said_with_its_range_or_why_there_is_none(facts: dict[str, A
 )
 def test_a_chance_is_never_said_to_be_nought_or_certain(chance: float, said: str) -> None:
     assert sentences.chance_text(chance) == said
+
+
+def forecast(**more: Any) -> str:
+    facts = {"name": "Particles ≥4 µm(c)", "is_count": True, "value": 2000.0, "limit_high": 2500.0, "runway": "dated"}
+    speaker = outlook(**(facts | more))
+    finding = Finding(
+        family="dirt", kind=Kind.FORECAST, weight=1, mails=True, sample_id=1, drawn_at=NOW, charge_id=1, speaker=speaker
+    )
+    return sentences.headline(finding, UTC)
+
+
+# ISO 4406:2021, table 1: number 18 is more than 1300 up to and including 2500 per mL.
+@pytest.mark.parametrize(
+    ("facts", "said"),
+    [
+        (
+            {"chance": 0.22, "next_planned_at": NOW + timedelta(days=30)},
+            "≥4 µm(c) code 18 now, may pass its limit 18: 22 % chance by 1 Jul 2026",
+        ),
+        ({"chance": 0.22}, "≥4 µm(c) code 18 now, may pass its limit 18: 22 % chance before the next sample"),
+        ({"runway_median": NOW}, "≥4 µm(c) code 18 now, may pass its limit 18 about 1 Jun 2026"),
+        (
+            {"is_count": False, "name": "Base", "unit": "", "value": 4.0, "limit_high": None, "limit_low": 3.0}
+            | {"decimals": 1, "chance": 0.3},
+            "Base 4.0 now, may fall below its limit 3.0: 30 % chance before the next sample",
+        ),
+    ],
+)
+def test_a_forecast_says_what_may_come_and_what_is_now(facts: dict[str, Any], said: str) -> None:
+    assert forecast(**facts) == said
+
+
+@pytest.mark.parametrize(
+    ("drawn_at", "said"),
+    [
+        (None, "The first sample, planned for 1 Jun 2026, has not come. No sample of this reservoir is on record yet."),
+        (
+            NOW - timedelta(days=60),
+            "The sample planned for 1 Jun 2026 has not come. The last one was drawn 2 Apr 2026.",
+        ),
+    ],
+)
+def test_a_missing_sample_is_said_with_the_one_before_it_if_any(drawn_at: datetime | None, said: str) -> None:
+    finding = Finding(
+        family="sampling", kind=Kind.OVERDUE, weight=1, mails=True, sample_id=None, drawn_at=drawn_at, charge_id=None,
+        due_at=NOW,
+    )  # fmt: skip
+    assert sentences.evidence(finding, UTC) == said
 
 
 def test_a_day_is_the_day_of_the_site() -> None:
