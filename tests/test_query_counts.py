@@ -67,11 +67,11 @@ PAGES: dict[str, tuple[Kwargs, int]] = {
     "register-fluid": (first("charges__fluid"), 5),
     "register-position": (first("filter_positions"), 5),
     "register-event": (first("events"), 4),
-    "register-reservoir-add": (nothing, 7),
+    "register-reservoir-add": (nothing, 8),
     "register-reservoir-edit": (first(), 8),
-    "register-event-add": (nothing, 6),
-    "register-element-add": (nothing, 4),
-    "register-target-add": (nothing, 8),
+    "register-event-add": (nothing, 7),
+    "register-element-add": (nothing, 5),
+    "register-target-add": (nothing, 9),
 }
 
 

@@ -19,6 +19,7 @@ from fleet.forms.register_list import ListFilter
 from fleet.models import Person, Reservoir, Role
 from fleet.refusals import RefusedError
 from fleet.targets import InForce, in_force
+from fleet.views.register_empty import lead_out_of_empty_lists
 from fleet.views.register_ledger import facts, ledger_of
 from fleet.views.register_noun import NOUNS, Noun, Section, listed_nouns
 
@@ -53,8 +54,8 @@ def listing(request: HttpRequest, noun: Noun) -> HttpResponseBase:
     form = ListFilter(request.GET, with_area=bool(noun.area), with_class=bool(noun.reservoir_class))
     rows = _sorted(noun, _narrowed(noun, form, request), request.GET.get("sort", ""))
     if request.GET.get("format") == "csv":
-        found = ([column.show(row) for column in noun.columns] for row in rows.iterator(chunk_size=1000))
-        return csv_response(noun.slug, [column.label for column in noun.columns], found)
+        found = ([column.show(row) for column in noun.csv_columns] for row in rows.iterator(chunk_size=1000))
+        return csv_response(noun.slug, [column.csv_heading for column in noun.csv_columns], found)
     within = {name: request.GET[name] for name in noun.within if request.GET.get(name)}
     page = Paginator(rows, A_PAGE).get_page(request.GET.get("page"))
     context = {
@@ -145,6 +146,8 @@ def change(request: HttpRequest, noun: Noun, pk: int | None = None) -> HttpRespo
     if request.method == "POST" and form.is_valid() and (saved := _saved(noun, form, person, now)):
         messages.success(request, f"{noun.one.capitalize()} saved.")
         return redirect(_next(request) or noun.home_of(saved))
+    if row is None:
+        lead_out_of_empty_lists(form, person, request.get_full_path())
     context = {
         "noun": noun,
         "row": row,

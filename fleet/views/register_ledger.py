@@ -51,19 +51,19 @@ def ledger_of(noun: Noun, rows: Iterable[Any], sort: str = "", here: str = "", w
 
 def _heading(column: Column, sort: str, here: str) -> Heading:
     if not (column.sort and here):
-        return Heading(column.label, column.numeric)
+        return Heading(column.heading, column.numeric)
     is_chosen = sort.removeprefix("-") == column.sort
     order = ("descending" if sort.startswith("-") else "ascending") if is_chosen else ""
     following = f"-{column.sort}" if order == "ascending" else column.sort
     joint = "" if here.endswith("?") else "&"
-    return Heading(column.label, column.numeric, f"{here}{joint}sort={following}", order)
+    return Heading(column.heading, column.numeric, f"{here}{joint}sort={following}", order)
 
 
 def _cell(noun: Noun, column: Column, row: Model, *, is_first: bool) -> Cell:
     text = on_screen(column.show(row))
     if is_first:
-        return Cell(column.label, text or "not named", column.numeric, noun.url_of(row))
-    return Cell(column.label, text, column.numeric, column.link(row) if column.link else "")
+        return Cell(column.heading, text or "not named", column.numeric, noun.url_of(row))
+    return Cell(column.heading, text, column.numeric, column.link(row) if column.link else "")
 
 
 def facts(noun: Noun, row: Model) -> list[Cell]:

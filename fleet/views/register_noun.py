@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from datetime import date, datetime
+from operator import attrgetter
 from typing import Any, Protocol
 
 from django.db.models import Model, Q, QuerySet
@@ -53,9 +54,10 @@ def words_in(*paths: str) -> Callable[[QuerySet[Any], str], QuerySet[Any]]:
 
 @dataclass(frozen=True, slots=True)
 class Column:
-    """One column of a list and one line of a detail page. The unit stands in the label.
+    """One column of a list and one line of a detail page, with its unit.
 
-    `about` names the page on which the column would say the same in every row, and where it is left out.
+    `about` names the page on which the column would say the same in every row, and where it is left out. `in_file` is
+    False for what would cost a question to the database for each row of a download.
     """
 
     label: str
@@ -64,6 +66,18 @@ class Column:
     numeric: bool = False
     about: str = ""
     link: Callable[[Any], str] | None = None
+    unit: str = ""
+    in_file: bool = True
+
+    @property
+    def heading(self) -> str:
+        """As it stands over a column on the screen: Volume, L."""
+        return f"{self.label}, {self.unit}" if self.unit else self.label
+
+    @property
+    def csv_heading(self) -> str:
+        """As it stands over a column of a file: Volume (L)."""
+        return f"{self.label} ({self.unit})" if self.unit else self.label
 
 
 @dataclass(frozen=True, slots=True)
@@ -81,6 +95,7 @@ class Noun:
 
     `within` maps a name in the address (?reservoir=5) to the path that narrows the list by it. `parent` is the path to
     the row whose page one returns to after saving. `more` are lines that only the detail page shows.
+    `only_csv` are columns that only the download has: what the others say in words, as keys and bare numbers.
     `listed` is the place on the overview, 0 for none.
     """
 
@@ -95,6 +110,7 @@ class Noun:
     write: Role = Role.ENGINEER
     read: Role = Role.READER
     more: tuple[Column, ...] = ()
+    only_csv: tuple[Column, ...] = ()
     sections: tuple[Section, ...] = ()
     within: Mapping[str, str] = field(default_factory=dict)
     area: str = ""
@@ -115,7 +131,18 @@ class Noun:
     @property
     def add_words(self) -> str:
         """What the button says: Add a site, Log an event, Fit an element."""
-        return f"{self.add} {'an' if self.one[0] in 'aeio' else 'a'} {self.one}"
+        return f"{self.add} {self.a_one}"
+
+    @property
+    def a_one(self) -> str:
+        """The noun with its article: a site, an area."""
+        return f"{'an' if self.one[0] in 'aeio' else 'a'} {self.one}"
+
+    @property
+    def csv_columns(self) -> tuple[Column, ...]:
+        """Everything that a row says, for a download."""
+        more = [column for column in self.more if column.in_file and column.link is None]
+        return (*self.columns, *self.only_csv, *more)
 
     @property
     def list_name(self) -> str:
@@ -160,6 +187,10 @@ def listed_nouns() -> list[Noun]:
 
 # What a row of a reservoir needs for its name and its clock.
 IN_RESERVOIR = ("reservoir__machine", "reservoir__area__site")
+
+
+# The key of the reservoir that a row belongs to, for files.
+ITS_TAG = Column("Tag", attrgetter("reservoir.tag"))
 
 
 def reservoir_page(row: Any) -> str:

@@ -12,7 +12,7 @@ from fleet.forms.filters import ElementForm, PositionForm
 from fleet.forms.oil import ChargeForm, EventForm, FluidForm
 from fleet.models import Element, Event, FilterPosition, Fluid, Limit, OilCharge, Person, Role, Scope, Site, Target
 from fleet.models.targets import Figure
-from fleet.views.register_noun import IN_RESERVOIR, Column, Noun, Section, known, reservoir_page, words_in
+from fleet.views.register_noun import IN_RESERVOIR, ITS_TAG, Column, Noun, Section, known, reservoir_page, words_in
 
 
 def _at(moment: datetime | None, site: Site) -> datetime | None:
@@ -60,13 +60,15 @@ FLUID = known(
             Column("Fluid", attrgetter("name"), sort="name"),
             Column("Kind", attrgetter("kind"), sort="kind"),
             Column("ISO VG", attrgetter("viscosity_grade"), numeric=True, sort="viscosity_grade"),
-            Column("Viscosity 40 °C, mm²/s", attrgetter("viscosity_40"), numeric=True, sort="viscosity_40"),
-            Column("Acid number new, mg KOH/g", attrgetter("acid_number"), numeric=True, sort="acid_number"),
+            Column("Viscosity at 40 °C", attrgetter("viscosity_40"), numeric=True, sort="viscosity_40", unit="mm²/s"),
+            Column(
+                "Acid number of new oil", attrgetter("acid_number"), numeric=True, sort="acid_number", unit="mg KOH/g"
+            ),
             Column("Reservoirs", attrgetter("in_use"), numeric=True, sort="in_use"),
         ),
         more=(
-            Column("Viscosity at 100 °C, mm²/s", attrgetter("viscosity_100")),
-            Column("Density at 15 °C, kg/L", attrgetter("density_kg_l")),
+            Column("Viscosity at 100 °C", attrgetter("viscosity_100"), unit="mm²/s"),
+            Column("Density at 15 °C", attrgetter("density_kg_l"), unit="kg/L"),
             Column("Notes", attrgetter("notes")),
         ),
         sections=(Section("charge", "fluid"),),
@@ -101,8 +103,9 @@ CHARGE = known(
             ),
             Column("Filled in", lambda row: _at(row.started_at, row.reservoir.area.site), sort="started_at"),
             Column("Until", lambda row: _at(row.ended_at, row.reservoir.area.site), sort="ended_at"),
-            Column("Volume, L", attrgetter("volume_l"), numeric=True, sort="volume_l"),
+            Column("Volume", attrgetter("volume_l"), numeric=True, sort="volume_l", unit="L"),
         ),
+        only_csv=(ITS_TAG,),
     )
 )
 
@@ -136,15 +139,16 @@ EVENT = known(
                 link=reservoir_page,
             ),
             Column("When", lambda row: _at(row.at, row.reservoir.area.site), sort="at"),
-            Column("Oil filled in, L", attrgetter("litres"), numeric=True, sort="litres"),
+            Column("Oil filled in", attrgetter("litres"), numeric=True, sort="litres", unit="L"),
             Column("Note", attrgetter("note")),
             Column("By", attrgetter("entered_by"), sort="entered_by__last_name"),
         ),
+        only_csv=(ITS_TAG,),
         more=(
             Column("Until", lambda row: _at(row.ended_at, row.reservoir.area.site)),
             Column("Oil", attrgetter("fluid")),
-            Column("Flow of the offline filter, L/min", attrgetter("flow_l_min")),
-            Column("Machine hours, h", attrgetter("machine_hours")),
+            Column("Flow of the offline filter", attrgetter("flow_l_min"), unit="L/min"),
+            Column("Machine hours", attrgetter("machine_hours"), unit="h"),
         ),
     )
 )
@@ -173,11 +177,12 @@ POSITION = known(
                 link=reservoir_page,
             ),
             Column("Place", lambda row: row.get_place_display(), sort="place"),
-            Column("Flow, L/min", attrgetter("flow_l_min"), numeric=True, sort="flow_l_min"),
+            Column("Flow", attrgetter("flow_l_min"), numeric=True, sort="flow_l_min", unit="L/min"),
             Column("Whole flow", attrgetter("full_flow")),
             Column("Bypass", attrgetter("has_bypass")),
         ),
-        more=(Column("Δp when clean, bar", attrgetter("clean_dp_bar")),),
+        more=(Column("Δp when clean", attrgetter("clean_dp_bar"), unit="bar"),),
+        only_csv=(ITS_TAG,),
         sections=(Section("element", "position"),),
     )
 )
@@ -213,6 +218,13 @@ ELEMENT = known(
             Column("Fitted", attrgetter("fitted_on"), sort="fitted_on"),
             Column("Removed", attrgetter("removed_on"), sort="removed_on"),
         ),
+        only_csv=(
+            Column("Tag", attrgetter("position.reservoir.tag")),
+            Column("Kind of rating", lambda row: row.get_rating_kind_display()),
+            Column("Beta ratio", attrgetter("beta")),
+            Column("Beta ratio at", attrgetter("beta_size_um"), unit="µm(c)"),
+            Column("Rating size", attrgetter("rating_um"), unit="µm"),
+        ),
         more=(Column("Why removed, and what was found", attrgetter("removal_note")),),
     )
 )
@@ -224,6 +236,28 @@ def _whom(figure: Figure) -> str:
         return str(figure.reservoir)
     part = {Scope.CLASS: figure.get_reservoir_class_display(), Scope.FLUID: figure.fluid}.get(Scope(figure.scope))
     return f"{figure.site}: {part}" if part else f"{figure.site}: the whole plant"
+
+
+def _figure_unit(figure: Figure) -> str:
+    """The unit of the bare numbers; a code has none."""
+    if figure.code:
+        return ""
+    return "%" if figure.basis == Figure.Basis.PERCENT else figure.measurand.unit
+
+
+# A figure taken apart, so that a spreadsheet can reckon with it and send it back.
+FIGURE_KEYS = (
+    Column("Code", attrgetter("code")),
+    Column("Not below", attrgetter("low")),
+    Column("Not above", attrgetter("high")),
+    Column("Unit", _figure_unit),
+    Column("Figure is", lambda row: row.get_basis_display()),
+    Column("Set for", lambda row: row.get_scope_display()),
+    Column("Site", attrgetter("site")),
+    Column("Class", lambda row: row.get_reservoir_class_display()),
+    Column("Fluid", attrgetter("fluid")),
+    Column("Tag", lambda row: row.reservoir.tag if row.reservoir else None),
+)
 
 
 def _figure_noun(key: str, listed: int, model: type[Target] | type[Limit], form: Any, intro: str) -> Noun:
@@ -255,6 +289,7 @@ def _figure_noun(key: str, listed: int, model: type[Target] | type[Limit], form:
             Column("From", attrgetter("valid_from"), sort="valid_from"),
             Column("Source", attrgetter("source"), sort="source"),
         ),
+        only_csv=FIGURE_KEYS,
         more=(
             Column("Why", attrgetter("reason")),
             Column("Set by", attrgetter("author")),

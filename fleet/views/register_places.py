@@ -11,7 +11,7 @@ from fleet.forms.people import PersonForm
 from fleet.forms.places import AreaForm, MachineForm, SiteForm
 from fleet.forms.reservoirs import AliasForm, ReservoirForm, SamplePointForm
 from fleet.models import Area, Machine, Person, Reservoir, ReservoirAlias, Role, SamplePoint, Site
-from fleet.views.register_noun import IN_RESERVOIR, Column, Noun, Section, known, reservoir_page, words_in
+from fleet.views.register_noun import IN_RESERVOIR, ITS_TAG, Column, Noun, Section, known, reservoir_page, words_in
 
 
 def _history(row: Reservoir) -> str:
@@ -134,20 +134,20 @@ RESERVOIR = known(
             Column("Area", attrgetter("area.name"), sort="area__name", about="area"),
             Column("Class", lambda row: row.get_reservoir_class_display(), sort="reservoir_class"),
             Column("Criticality", attrgetter("criticality"), sort="criticality"),
-            Column("Volume, L", attrgetter("volume_l"), numeric=True, sort="volume_l"),
-            Column("Sampled every, days", attrgetter("interval_days"), numeric=True, sort="interval_days"),
+            Column("Volume", attrgetter("volume_l"), numeric=True, sort="volume_l", unit="L"),
+            Column("Sampled every", attrgetter("interval_days"), numeric=True, sort="interval_days", unit="days"),
         ),
         more=(
             Column("Its history", lambda row: "samples, trend and forecast", link=_history),
-            Column("Pump flow, L/min", attrgetter("pump_flow_l_min")),
-            Column("Working pressure, bar", attrgetter("pressure_bar")),
+            Column("Pump flow", attrgetter("pump_flow_l_min"), unit="L/min"),
+            Column("Working pressure", attrgetter("pressure_bar"), unit="bar"),
             Column("Most sensitive part", attrgetter("sensitive_part")),
             Column("Maker's requirement", attrgetter("machine.maker_requirement")),
             Column("Environment", attrgetter("environment")),
             Column("Cooler", lambda row: row.get_cooler_display()),
             Column("Breather", attrgetter("breather")),
             Column("Hazards", attrgetter("hazards")),
-            Column("Also serves", lambda row: ", ".join(map(str, row.also_serves.all()))),
+            Column("Also serves", lambda row: ", ".join(map(str, row.also_serves.all())), in_file=False),
             Column("Next planned stop", attrgetter("next_stop_on")),
             Column("Out of use since", attrgetter("retired_on")),
             Column("Notes", attrgetter("notes")),
@@ -194,6 +194,7 @@ POINT = known(
             Column("May be drawn running", attrgetter("may_sample_running")),
             Column("Out of use since", attrgetter("retired_on"), sort="retired_on"),
         ),
+        only_csv=(ITS_TAG,),
     )
 )
 
@@ -221,6 +222,7 @@ ALIAS = known(
             Column("Used from", attrgetter("valid_from"), sort="valid_from"),
             Column("Used until", attrgetter("valid_to"), sort="valid_to"),
         ),
+        only_csv=(ITS_TAG,),
     )
 )
 

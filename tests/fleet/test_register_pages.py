@@ -7,9 +7,10 @@ from typing import Any
 import pytest
 from django.test import Client
 from django.urls import reverse
+from pytest_django import DjangoAssertNumQueries
 
 from fleet.models import Role
-from tests.builders import alias, area, element, event, filter_position, limit, person, reservoir, site, target
+from tests.builders import alias, area, element, event, filter_position, fluid, limit, person, reservoir, site, target
 
 pytestmark = pytest.mark.django_db
 
@@ -38,6 +39,33 @@ def test_an_empty_fleet_shows_the_way_to_a_first_result(client: Client) -> None:
     assert reverse("register-area-add") in page
     reservoir()
     assert "No reservoir is registered yet" not in read(client, "register")
+
+
+def test_the_steps_of_an_empty_fleet_say_an_area(client: Client) -> None:
+    page = read(client, "register")
+    assert ">add an area</a>" in page
+    assert ">add a fluid</a>" in page
+
+
+def test_the_first_steps_lead_to_the_target_and_the_limit(client: Client) -> None:
+    page = read(client, "board")
+    for name in ("register-target-add", "register-limit-add", "log"):
+        assert f'href="{reverse(name)}"' in page
+
+
+def test_an_empty_list_in_a_form_leads_to_its_first_row_and_back(client: Client) -> None:
+    site()
+    page = read(client, "register-reservoir-add", "?next=/")
+    for noun in ("area", "fluid"):
+        assert f'None yet: <a href="{reverse(f"register-{noun}-add")}?next=' in page
+    assert "?next=%2Fregister%2Freservoirs%2Fadd%2F%3Fnext%3D%2F" in page
+    area()
+    assert page.count("None yet") == 2
+    assert read(client, "register-reservoir-add").count("None yet") == 1
+
+
+def test_who_may_not_add_the_first_row_is_told_who_may(client: Client) -> None:
+    assert "None yet. An administrator can add a site." in read(client, "register-area-add")
 
 
 def test_people_stand_on_the_overview_for_administrators_only(client: Client) -> None:
@@ -73,9 +101,9 @@ def test_a_list_is_narrowed_to_an_area_and_to_a_reservoir(client: Client) -> Non
 def test_a_list_sorts_both_ways_and_by_nothing_it_does_not_offer(client: Client) -> None:
     for n, litres in enumerate([400.0, 90.0, 2000.0]):
         reservoir(machine=f"Press {n}", volume_l=litres)
-    volumes = [row["Volume, L"] for row in table(client, "register-reservoirs", "&sort=volume_l")]
+    volumes = [row["Volume (L)"] for row in table(client, "register-reservoirs", "&sort=volume_l")]
     assert volumes == ["90.0", "400.0", "2000.0"]
-    assert [row["Volume, L"] for row in table(client, "register-reservoirs", "&sort=-volume_l")] == volumes[::-1]
+    assert [row["Volume (L)"] for row in table(client, "register-reservoirs", "&sort=-volume_l")] == volumes[::-1]
     assert len(table(client, "register-reservoirs", "&sort=area__site__time_zone")) == 3
     assert 'aria-sort="descending"' in read(client, "register-reservoirs", "?sort=-volume_l")
 
@@ -86,6 +114,46 @@ def test_a_long_list_comes_a_hundred_rows_at_a_time_and_whole_as_csv(client: Cli
     assert "Hall 100" not in read(client, "register-areas")
     assert "Hall 100" in read(client, "register-areas", "?page=2")
     assert len(table(client, "register-areas")) == 101
+
+
+def test_a_figure_comes_apart_as_csv_with_bare_numbers_and_the_tag(client: Client) -> None:
+    tank = reservoir(tag="P4-HP")
+    limit(tank, key="water", high=300.0), target(tank, key="viscosity_40", low=-10.0, high=10.0, basis="percent")
+    wet, thick = table(client, "register-limits")[0], table(client, "register-targets")[0]
+    names = ("Not below", "Not above", "Unit", "Tag", "Set for")
+    assert [wet[name] for name in names] == ["", "300.0", "mg/kg", "P4-HP", "one reservoir"]
+    assert [thick[name] for name in names] == ["-10.0", "10.0", "%", "P4-HP", "one reservoir"]
+
+
+@pytest.mark.parametrize("noun", ["sample-points", "other-names", "oil-charges", "events", "filter-positions"])
+def test_rows_of_a_reservoir_carry_its_tag_as_csv(client: Client, noun: str) -> None:
+    tank = reservoir(tag="P4-HP")
+    alias(tank), event(tank), filter_position(tank)
+    assert [row["Tag"] for row in table(client, f"register-{noun}")] == ["P4-HP"]
+
+
+def test_an_element_comes_apart_as_csv(client: Client) -> None:
+    element(filter_position(reservoir(tag="P4-HP")))
+    row = table(client, "register-elements")[0]
+    assert (row["Tag"], row["Beta ratio"], row["Beta ratio at (µm(c))"]) == ("P4-HP", "1000.0", "5.0")
+
+
+def test_a_unit_stands_after_a_comma_on_the_screen_and_in_brackets_as_csv(client: Client) -> None:
+    reservoir()
+    assert ">Volume, L</a>" in read(client, "register-reservoirs")
+    assert table(client, "register-reservoirs")[0]["Sampled every (days)"] == "60"
+
+
+@pytest.mark.parametrize("rows", [3, 30])
+@pytest.mark.parametrize("noun", ["reservoirs", "limits", "elements", "fluids"])
+def test_a_download_asks_the_same_number_of_questions(
+    client: Client, noun: str, rows: int, django_assert_max_num_queries: DjangoAssertNumQueries
+) -> None:
+    for n in range(rows):
+        tank = reservoir(machine=f"Press {n}", fluid=fluid(f"HM {n}"))
+        limit(tank, "20/18/15"), element(filter_position(tank))
+    with django_assert_max_num_queries(6):
+        assert len(table(client, f"register-{noun}")) == rows
 
 
 def test_a_name_that_a_spreadsheet_would_run_is_disarmed(client: Client) -> None:
