@@ -23,6 +23,16 @@ def test_a_weak_password_is_refused(monkeypatch: pytest.MonkeyPatch, password: s
     assert not Person.objects.exists()
 
 
+def test_without_a_terminal_it_says_how_to_give_the_password(monkeypatch: pytest.MonkeyPatch) -> None:
+    def no_terminal(prompt: str) -> str:
+        raise EOFError
+
+    monkeypatch.setattr("getpass.getpass", no_terminal)
+    with pytest.raises(CommandError, match="--password-from VARIABLE"):
+        call_command("add_person", "ada")
+    assert not Person.objects.exists()
+
+
 def test_a_login_name_that_is_taken_is_refused(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setenv("FIRST_PASSWORD", "a long enough word")
     call_command("add_person", "ada", "--password-from", "FIRST_PASSWORD")

@@ -13,6 +13,10 @@ from fleet.models import Person, Role
 from fleet.people import save_person
 from fleet.refusals import RefusedError
 
+NO_TERMINAL = (
+    "There is no terminal to ask for the password at: put it into a variable and use --password-from VARIABLE."
+)
+
 
 class Command(BaseCommand):
     help = "Add a person. The password is asked for, or taken from the variable that --password-from names."
@@ -39,5 +43,10 @@ class Command(BaseCommand):
 
     def _password(self, variable: str) -> str:
         if variable:
-            return os.environ.get(variable, "")
-        return getpass.getpass("Password: ")
+            if not os.environ.get(variable):
+                raise CommandError(f"The variable {variable} holds no password.")
+            return os.environ[variable]
+        try:
+            return getpass.getpass("Password: ")
+        except EOFError as error:
+            raise CommandError(NO_TERMINAL) from error
