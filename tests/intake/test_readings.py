@@ -95,6 +95,7 @@ def test_a_counter_that_left_out_four_keeps_its_sizes() -> None:
     assert [(reading.measurand, reading.size_scale) for reading in readings] == [("p6", "um_c"), ("p14", "um_c")]
 
 
-def test_too_many_to_count_is_at_least_the_next_size() -> None:
+def test_too_many_to_count_is_beyond_the_table() -> None:
+    # ISO 4406, Table 1: number 28 ends at 2 500 000 per mL.
     first = readings_from_code(parse_iso_code("*/19/14"))[0]
-    assert (first.low, first.high, first.qualifier, first.reported_text) == (2500.0, None, ">", "*")
+    assert (first.low, first.high, first.qualifier, first.reported_text) == (2_500_000.0, None, ">", "*")
