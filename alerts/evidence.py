@@ -91,7 +91,7 @@ def _direction(outlook: OutlookFacts, before: tuple[PastValue, ...]) -> str:
         if new <= 0 or old <= 0:
             return ""
         steps = log2(new / old)
-        return _moved(steps, f"{abs(steps):.1f} code steps", 0.05)
+        return _moved(steps, sentences.steps_text(abs(steps)), 0.05)
     smallest = 0.5 * 10**-outlook.decimals
     amount = f"{sentences.number_text(abs(new - old), outlook.decimals)} {outlook.unit}".strip()
     return _moved(new - old, amount, smallest)

@@ -139,9 +139,12 @@ def _measured(outlook: OutlookFacts, kind: Kind, zone: tzinfo) -> str:
 def distance_text(outlook: OutlookFacts) -> str:
     """How far the value is from its limit, without a sign: 1.7 code steps; 24 % of the span from new oil to limit."""
     steps = abs(outlook.headroom or 0.0)
-    if outlook.is_count:
-        return f"{steps:.1f} code step" if f"{steps:.1f}" == "1.0" else f"{steps:.1f} code steps"
-    return f"{steps:.0f} % of the span"
+    return steps_text(steps) if outlook.is_count else f"{steps:.0f} % of the span"
+
+
+def steps_text(steps: float) -> str:
+    """1.0 code step; 1.7 code steps."""
+    return f"{steps:.1f} code step" if f"{steps:.1f}" == "1.0" else f"{steps:.1f} code steps"
 
 
 def _is_past(outlook: OutlookFacts) -> bool:

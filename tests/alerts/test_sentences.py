@@ -146,6 +146,11 @@ def test_a_missing_sample_is_said_with_the_one_before_it_if_any(drawn_at: dateti
     assert sentences.evidence(finding, UTC) == said
 
 
+@pytest.mark.parametrize(("steps", "said"), [(1.0, "1.0 code step"), (1.04, "1.0 code step"), (1.7, "1.7 code steps")])
+def test_one_step_is_said_as_one(steps: float, said: str) -> None:
+    assert sentences.steps_text(steps) == said
+
+
 def test_a_day_is_the_day_of_the_site() -> None:
     late = datetime(2026, 3, 5, 20, tzinfo=UTC)
     assert sentences.day_text(late, ZoneInfo("Asia/Tokyo")) == "6 Mar 2026"
