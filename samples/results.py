@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import asdict, dataclass
-from datetime import datetime
+from datetime import datetime, timedelta
+from zoneinfo import ZoneInfo
 
 from django.db import IntegrityError, transaction
 
@@ -227,13 +228,18 @@ def _result(reading: Reading, measurand: Measurand) -> Result:
 def _candidate(entry: SampleEntry) -> CandidateSample:
     counted = next((reading.counted_ml for reading in entry.readings if reading.counted_ml is not None), None)
     return CandidateSample(
-        drawn_at=entry.facts.drawn_at,
+        drawn_at=entry.facts.drawn_at.astimezone(_zone(entry)),
         values={reading.measurand: reading.value for reading in entry.readings if reading.value is not None},
         code=entry.stated_code,
         counted_ml=counted,
         machine_hours=entry.facts.machine_hours,
         reason=entry.facts.reason,
     )
+
+
+def _zone(entry: SampleEntry) -> ZoneInfo:
+    """The checks say and compare days: they are days on the site's clock."""
+    return entry.reservoir.area.site.zone
 
 
 def _comparable(entry: SampleEntry, history: History) -> list[Sample]:
@@ -258,23 +264,39 @@ def _doubts(entry: SampleEntry, candidate: CandidateSample, history: History) ->
         charge.pk if charge else None,
         entry.laboratory.pk if entry.laboratory else None,
     )
-    first = history.charges[0].started_at if history.charges else None
+    begun = charge.started_at if charge else history.charges[0].started_at if history.charges else None
+    zone = _zone(entry)
     return run_checks(
         candidate,
-        [_past(sample) for sample in _last_ones(entry, history)],
-        events=[_event(event) for event in history.events],
+        [_past(sample, zone) for sample in _last_ones(entry, history)],
+        events=[_event(event, zone) for event in history.events],
         expectations=expectations(history, bottle, entry.readings),
-        charge_began=charge.started_at if charge else first,
+        charge_began=begun and begun.astimezone(zone),
+        same_point=[_past(sample, zone) for sample in _others_of_the_point(entry, history)],
     )
 
 
-def _past(sample: Sample) -> PastSample:
+def _others_of_the_point(entry: SampleEntry, history: History) -> list[Sample]:
+    """Bottles of the point drawn about the same time; one of the very same moment is the same bottle, and refused."""
+    about = timedelta(days=2)
+    return [
+        sample
+        for sample in history.samples
+        if sample.point_id == entry.point.pk
+        and sample.verdict != Sample.Verdict.SET_ASIDE
+        and sample.reason != Sample.Reason.NEW_OIL
+        and timedelta(0) < abs(sample.drawn_at - entry.facts.drawn_at) < about
+    ]
+
+
+def _past(sample: Sample, zone: ZoneInfo) -> PastSample:
     exact = {r.measurand.key: r.value for r in sample.current_results if r.value is not None}
-    return PastSample(sample.drawn_at, exact, code_of(sample.current_results), sample.machine_hours)
+    return PastSample(sample.drawn_at.astimezone(zone), exact, code_of(sample.current_results), sample.machine_hours)
 
 
-def _event(event: Event) -> PastEvent:
-    return PastEvent(event.ended_at or event.at, event.get_kind_display(), event.kind in CLEANING)
+def _event(event: Event, zone: ZoneInfo) -> PastEvent:
+    ended = event.ended_at or event.at
+    return PastEvent(ended.astimezone(zone), event.get_kind_display(), event.kind in CLEANING)
 
 
 def _told(error: Doubt) -> EntryError:

@@ -9,7 +9,7 @@ from typing import Final
 
 from samples.intake.numbers import read_number
 
-MOST_ROWS: Final = 20_000
+MOST_ROWS: Final = 5_000
 MOST_BYTES: Final = 10 * 1024 * 1024
 DELIMITERS: Final = (",", ";", "\t", "|")
 

@@ -159,3 +159,11 @@ def test_an_accepted_sample_is(press: Reservoir) -> None:
     first = save(press, counts("2178", "847", "63"), drawn_at=days_ago(40))
     accept(first, builders.person(Role.ENGINEER), "", NOON)
     assert save(press, counts("217800", "84700", "6300")).verdict == Sample.Verdict.IN_DOUBT
+
+
+def test_a_second_bottle_of_one_day_is_doubted_unless_it_repeats_on_purpose(press: Reservoir) -> None:
+    builders.sample(press, days_ago(3), {"water": 90.0})
+    again = save(press, water("92"), drawn_at=days_ago(3) + timedelta(hours=2))
+    repeat = save(press, water("91"), drawn_at=days_ago(3) + timedelta(hours=3), reason="resample")
+    assert [doubt.code for doubt in again.doubts.all()] != []
+    assert [doubt.code for doubt in repeat.doubts.all()] == []
