@@ -11,6 +11,8 @@ from enum import StrEnum
 from math import inf
 from typing import Final
 
+from samples.newest_bottle import of_newest_bottle
+
 
 class Kind(StrEnum):
     """The kinds of rule, gravest first; the same words as the rule's column."""
@@ -285,14 +287,16 @@ def is_back(outlook: OutlookFacts, kind: Kind, again: bool = False) -> bool:
 def of_family(outlooks: Iterable[OutlookFacts], family: str) -> list[OutlookFacts]:
     """The outlooks of a family. Counts come from one bottle: those of an older one have had their say."""
     found = [outlook for outlook in outlooks if outlook.family == family]
-    if family != DIRT:
-        return found
-    newest = max((o.drawn_at for o in found if o.drawn_at), default=None)
-    return [outlook for outlook in found if outlook.drawn_at == newest]
+    return of_newest_bottle(found, lambda outlook: outlook.drawn_at) if family == DIRT else found
+
+
+def _with_lines(family: str, reservoir: ReservoirFacts) -> list[OutlookFacts]:
+    """What is judged in a family: a size without target and limit silences none of those that have them."""
+    return of_family([o for o in reservoir.outlooks if o.has_target or o.has_limit], family)
 
 
 def _judged(family: str, reservoir: ReservoirFacts) -> list[OutlookFacts]:
-    return [o for o in of_family(reservoir.outlooks, family) if o.is_current and (o.has_target or o.has_limit)]
+    return [outlook for outlook in _with_lines(family, reservoir) if outlook.is_current]
 
 
 def _speaker(outlook: OutlookFacts, rules: Sequence[RuleFacts], as_of: datetime) -> Speaker | None:
@@ -319,7 +323,7 @@ def _likely(rule: RuleFacts, outlook: OutlookFacts) -> bool:
 
 
 def _family_finding(family: str, speakers: Sequence[Speaker], reservoir: ReservoirFacts) -> Finding | None:
-    lasting = {outlook.key for outlook in of_family(reservoir.outlooks, family)}
+    lasting = {outlook.key for outlook in _with_lines(family, reservoir)}
     heard = sorted((s for s in speakers if s.outlook.family == family and s.outlook.key in lasting), key=_worst_first)
     if not heard:
         return None

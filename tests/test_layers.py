@@ -20,6 +20,7 @@ PURE = (
     "samples/demo/stories.py",
     "samples/figures.py",
     "samples/lines.py",
+    "samples/newest_bottle.py",
     "samples/sample_codes.py",
     "samples/problems.py",
     "samples/readings.py",

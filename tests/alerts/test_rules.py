@@ -125,6 +125,12 @@ def test_counts_of_an_older_bottle_have_had_their_say() -> None:
     assert kinds(old) == [Kind.PAST_LIMIT]
 
 
+def test_a_size_that_nobody_judges_silences_no_other() -> None:
+    old = outlook(key="p14", family="dirt", is_count=True, word="past_limit", drawn_at=DRAWN - timedelta(days=40))
+    new = outlook(key="p38", family="dirt", is_count=True, word="cannot_tell", target_high=None, limit_high=None)
+    assert kinds(old, new) == [Kind.PAST_LIMIT]
+
+
 @pytest.mark.parametrize(
     ("days_late", "grace_days", "speaks"), [(5.9, None, 0), (6.1, None, 1), (1.9, 2, 0), (2.1, 2, 1)]
 )
