@@ -8,11 +8,12 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from fleet.models import RunwayState, StandingWord
+from fleet.models import Measurand, RunwayState, StandingWord
 from fleet.wording import headroom_text
 from samples.history import History
 from samples.lines import CODE_KEY
 from samples.models import Outlook, Sample
+from samples.newest_bottle import of_newest_bottle
 from samples.sample_codes import code_of
 from samples.series import figures_of
 from samples.trends.scales import observe
@@ -41,7 +42,7 @@ SHOWN_VALUES = 12
 
 def standing_facts(history: History, computed: Sequence[Computed], now: datetime) -> dict[str, Any]:
     """The fields of the Standing row, without its bookkeeping."""
-    judged = _of_newest_bottle([one for one in computed if is_judged(one.row)])
+    judged = _speaking([one for one in computed if is_judged(one.row)])
     worst = min(judged, key=_badness, default=None)
     word = StandingWord(worst.row.word) if worst else _unjudged_word(history, now)
     return {
@@ -53,15 +54,11 @@ def standing_facts(history: History, computed: Sequence[Computed], now: datetime
     }
 
 
-def _of_newest_bottle(judged: Sequence[Computed]) -> list[Computed]:
-    """Only the newest bottle speaks for dirt: a microscope count from before the counter came says no more."""
-    counted = [one.current[-1].drawn_at for one in judged if one.current and one.measurand.family == "dirt"]
-    newest = max(counted, default=None)
-    return [
-        one
-        for one in judged
-        if one.measurand.family != "dirt" or newest is None or (one.current and one.current[-1].drawn_at == newest)
-    ]
+def _speaking(judged: Sequence[Computed]) -> list[Computed]:
+    """Everything that is judged, of the counts only those of the newest bottle."""
+    counts = [one for one in judged if one.measurand.family == Measurand.Family.DIRT]
+    newest = of_newest_bottle(counts, lambda one: one.current[-1].drawn_at if one.current else None)
+    return [*newest, *(one for one in judged if one.measurand.family != Measurand.Family.DIRT)]
 
 
 def is_judged(outlook: Outlook) -> bool:
