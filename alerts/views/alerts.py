@@ -9,7 +9,6 @@ from django.db.models import QuerySet
 from django.http import HttpRequest, HttpResponse, HttpResponseBase
 from django.shortcuts import get_object_or_404, redirect, render
 from django.utils import timezone
-from django.utils.http import urlencode
 from django.views.decorators.http import require_GET, require_POST
 
 from alerts import advice, handling
@@ -18,6 +17,7 @@ from alerts.forms import FAILED_MAIL, AcknowledgeForm, AlertFilter, CloseForm
 from alerts.models import Alert, Delivery
 from alerts.rules import Kind
 from fleet.access import require, role_required
+from fleet.addresses import same_list
 from fleet.export import csv_response
 from fleet.models import Role
 
@@ -41,8 +41,8 @@ def alerts(request: HttpRequest) -> HttpResponseBase:
         "page": page,
         "failed_mails": Delivery.objects.filter(FAILED_MAIL).count(),
         "state": request.GET.get("state") or "open",
-        "here": _address(request),
-        "csv": _address(request, format="csv"),
+        "here": same_list(request),
+        "csv": same_list(request, format="csv"),
         "as_of": timezone.now(),
     }
     return render(request, "alerts/alerts.html", context)
@@ -121,9 +121,3 @@ def _csv_rows(found: QuerySet[Alert]) -> Iterator[tuple[object, ...]]:
             *(seen and seen.astimezone(zone), row.acknowledged_by),
             *(closed and closed.astimezone(zone), row.get_close_reason_display(), row.close_note),
         )
-
-
-def _address(request: HttpRequest, **changed: str) -> str:
-    """This page's address with some of its parameters changed and the page number dropped."""
-    kept = {key: str(value) for key, value in request.GET.items() if value and key not in {"page", "format"}}
-    return f"{request.path}?{urlencode(kept | changed)}"

@@ -4,8 +4,8 @@ from django.core.paginator import Paginator
 from django.http import HttpRequest, HttpResponseBase
 from django.shortcuts import render
 from django.utils import timezone
-from django.utils.http import urlencode
 
+from fleet.addresses import same_list
 from fleet.board import SORTS, BoardRow, board_row, ordered, totals
 from fleet.export import csv_response
 from fleet.forms.board import BoardFilter
@@ -47,8 +47,8 @@ def board(request: HttpRequest) -> HttpResponseBase:
         "rows": rows,
         "page": page,
         "columns": _columns(request, sort),
-        "here": _address(request),
-        "csv": _address(request, format="csv"),
+        "here": same_list(request),
+        "csv": same_list(request, format="csv"),
         "empty": not page and not Reservoir.objects.exists(),
     }
     return render(request, "fleet/board.html", context)
@@ -79,12 +79,6 @@ def _columns(request: HttpRequest, sort: str) -> list[dict[str, str]]:
         following = f"-{key}" if is_chosen and not downward else key
         order = ("descending" if downward else "ascending") if is_chosen else ""
         columns.append(
-            {"label": label, "css": css, "order": order, "url": _address(request, sort=following) if key else ""}
+            {"label": label, "css": css, "order": order, "url": same_list(request, sort=following) if key else ""}
         )
     return columns
-
-
-def _address(request: HttpRequest, **changed: str) -> str:
-    """This page's address with some of its parameters changed and the page number dropped."""
-    kept = {key: str(value) for key, value in request.GET.items() if value and key != "page"}
-    return f"{request.path}?{urlencode(kept | changed)}"

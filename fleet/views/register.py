@@ -13,6 +13,7 @@ from django.utils import timezone
 from django.utils.http import url_has_allowed_host_and_scheme, urlencode
 
 from fleet.access import require
+from fleet.addresses import same_list
 from fleet.export import csv_response
 from fleet.forms.base import PlantForm, summary
 from fleet.forms.register_list import ListFilter
@@ -61,10 +62,10 @@ def listing(request: HttpRequest, noun: Noun) -> HttpResponseBase:
     context = {
         "noun": noun,
         "form": form,
-        "ledger": ledger_of(noun, page, request.GET.get("sort", ""), _address(request, sort="")),
+        "ledger": ledger_of(noun, page, request.GET.get("sort", ""), same_list(request, sort="")),
         "page": page,
-        "here": _address(request),
-        "csv": _address(request, format="csv"),
+        "here": same_list(request),
+        "csv": same_list(request, format="csv"),
         "within": within,
         "add_url": f"{reverse(noun.name + '-add')}?{urlencode(within)}".removesuffix("?"),
         "may_write": person.may_act_as(noun.write),
@@ -88,11 +89,6 @@ def _narrowed(noun: Noun, form: ListFilter, request: HttpRequest) -> QuerySet[An
 def _sorted(noun: Noun, rows: QuerySet[Any], sort: str) -> QuerySet[Any]:
     known = {column.sort for column in noun.columns if column.sort}
     return rows.order_by(sort, "pk") if sort.removeprefix("-") in known else rows
-
-
-def _address(request: HttpRequest, **changed: str) -> str:
-    kept = {key: str(value) for key, value in request.GET.items() if value and key not in {"page", "format", *changed}}
-    return f"{request.path}?{urlencode(kept | {key: value for key, value in changed.items() if value})}"
 
 
 def detail(request: HttpRequest, noun: Noun, pk: int) -> HttpResponse:

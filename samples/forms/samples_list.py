@@ -30,6 +30,10 @@ class SamplesFilter(forms.Form):
         for name in ("verdict", "laboratory", "area"):
             self.fields[name].widget.attrs["data-submit-on-change"] = ""
 
+    @property
+    def is_narrowed(self) -> bool:
+        return any(self.cleaned_data.values())
+
     def narrow(self) -> Any:
         """The samples asked for, newest first. Days are those of UTC, which is near enough for a list."""
         self.full_clean()

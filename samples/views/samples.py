@@ -8,9 +8,9 @@ from typing import Any
 from django.core.paginator import Paginator
 from django.http import HttpRequest, HttpResponseBase
 from django.shortcuts import render
-from django.utils.http import urlencode
 
 from fleet.access import role_required
+from fleet.addresses import same_list
 from fleet.export import csv_response
 from fleet.models import Measurand, Role
 from samples.forms.samples_list import SamplesFilter
@@ -33,16 +33,12 @@ def samples(request: HttpRequest) -> HttpResponseBase:
         "form": form,
         "page": page,
         "rows": [(one, code_text(one.current_results)) for one in page],
-        "here": f"{request.path}?{_kept(request)}",
+        "here": same_list(request),
         "waiting": Sample.objects.in_doubt().count(),
-        "narrowed": bool(_kept(request)),
+        "narrowed": form.is_narrowed,
         "file": form.cleaned_data.get("intake"),
     }
     return render(request, "samples/samples.html", context)
-
-
-def _kept(request: HttpRequest) -> str:
-    return urlencode({key: str(value) for key, value in request.GET.items() if value and key not in {"page", "format"}})
 
 
 def _csv(found: Any) -> HttpResponseBase:
