@@ -32,7 +32,7 @@ class Names:
                 said = f"“{text[:60]}” can be any of {tags}. Write the tag."
                 return Problem("reservoir_ambiguous", said)
             if distinct:
-                return next(iter(distinct.values()))
+                return _in_service(next(iter(distinct.values())), day)
         if name in self.by_alias:
             said = f"“{text[:60]}” was another name of a reservoir, but not on {day:%-d %b %Y}. Write the tag."
             return Problem("reservoir_name_lapsed", said)
@@ -61,6 +61,13 @@ class Names:
             return found[0]
         said = f"No laboratory is called “{text[:60]}”. Add it to the register under that name, or correct the file."
         return Problem("laboratory_unknown", said)
+
+
+def _in_service(found: Reservoir, day: date) -> Reservoir | Problem:
+    if found.retired_on is None or day <= found.retired_on:
+        return found
+    said = f"{found} was taken out of service on {found.retired_on:%-d %b %Y}. Check the date, or correct the register."
+    return Problem("reservoir_retired", said)
 
 
 def read_names(site: Site | None = None) -> Names:

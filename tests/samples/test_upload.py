@@ -334,3 +334,10 @@ def test_a_file_is_never_said_to_be_kept(client: Client) -> None:
 def test_one_wrong_row_is_told_in_the_singular(client: Client) -> None:
     page = " ".join(choose(client, lab_file("NO-1;2026-05-20;;;;2178;847;63;25")).content.decode().split())
     assert "1 of 1 row is wrong, so nothing was saved.</strong> Correct it and" in page
+
+
+def test_a_row_for_a_reservoir_out_of_service_is_refused(client: Client) -> None:
+    Reservoir.objects.update(retired_on=date(2026, 5, 1))
+    response = choose(client, lab_file(GOOD))
+    assert response.status_code == 422
+    assert "was taken out of service on 1 May 2026" in response.content.decode()
