@@ -4,14 +4,17 @@
   opens and when it becomes graver, never twice for one kind, and never about a sample older than `rules.is_recent`
   allows. A result in doubt never gets here: outlooks are made from accepted samples.
 - When no rule speaks any more, the alert waits for a later accepted sample that shows it is over
-  (`rules.proof_it_is_over`). A forecast that shrinks or a sample that was set aside closes nothing; a person may.
+  (`rules.proof_it_is_over`). A forecast that shrinks, a sample that was set aside or one from another point closes
+  nothing; a person may.
 - When the oil was changed, the first accepted sample of the new oil that measured the family ends the alert about the
   old one; if the new oil is in trouble too, that is an alert of its own.
+- A reservoir that was taken out of service needs no response: from that day its alerts are closed.
 - What a person closed stays closed until a later sample, or a graver rule, speaks.
 """
 
 from dataclasses import dataclass
 from datetime import datetime
+from typing import Final
 
 from django.db import transaction
 from django.db.models import Exists, OuterRef, Q, QuerySet
@@ -35,6 +38,8 @@ from alerts.rules import (
 )
 from fleet.models import Site, Standing
 
+A_LOOK: Final = 200
+
 
 @dataclass(frozen=True)
 class _Case:
@@ -46,6 +51,16 @@ class _Case:
     mail: bool
 
 
+def waiting(as_of: datetime) -> list[int]:
+    """The reservoirs to be judged now, as many of each sort as one look takes: first those whose standing was written
+    since they were last judged, longest ago first, and then those for which time has changed something.
+
+    Each is to be judged by itself, so that one that cannot be judged keeps no other waiting.
+    """
+    changed = Standing.objects.unjudged().order_by("computed_at", "pk").values_list("pk", flat=True)
+    return list(dict.fromkeys([*changed[:A_LOOK], *_called_by_time(as_of)[:A_LOOK]]))
+
+
 def evaluate_changed(as_of: datetime, mail: bool = True) -> int:
     """Judge every reservoir whose standing was written since it was last judged; says how many were.
 
@@ -55,18 +70,16 @@ def evaluate_changed(as_of: datetime, mail: bool = True) -> int:
     return sum(evaluate_reservoir(reservoir_id, as_of, mail) for reservoir_id in changed)
 
 
-def evaluate_overdue(as_of: datetime, mail: bool = True) -> int:
-    """Judge reservoirs whose planned sample has not come and that nobody was told about: time changed, not a row."""
-    late = Standing.objects.overdue(as_of).filter(~Exists(_told())).select_related("reservoir__area")
-    rules = {rule.site_id: rule for rule in Rule.objects.filter(kind=Kind.OVERDUE, enabled=True)} if late else {}
-    past_grace = [s.pk for s in late if _is_past_grace(s, rules.get(s.reservoir.area.site_id), as_of)]
-    return sum(evaluate_reservoir(reservoir_id, as_of, mail, even_if_judged=True) for reservoir_id in past_grace)
+def evaluate_by_time(as_of: datetime, mail: bool = True) -> int:
+    """Judge the reservoirs for which time changed something, not a row; says how many."""
+    called = _called_by_time(as_of)
+    return sum(evaluate_reservoir(reservoir_id, as_of, mail, even_if_judged=True) for reservoir_id in called)
 
 
 def mark_history_judged(as_of: datetime) -> int:
     """Open the alerts that the standings call for, dated by their samples and without owing any mail: for history that
     was loaded in bulk."""
-    return evaluate_changed(as_of, mail=False) + evaluate_overdue(as_of, mail=False)
+    return evaluate_changed(as_of, mail=False) + evaluate_by_time(as_of, mail=False)
 
 
 def judge_site_again(site: Site) -> int:
@@ -80,8 +93,11 @@ def evaluate_reservoir(reservoir_id: int, as_of: datetime, mail: bool = True, ev
     standing = _claimed(reservoir_id, even_if_judged)
     if standing is None:
         return False
-    if standing.reservoir.retired_on is None:
-        _bring_up_to_date(_Case(standing, facts.reservoir_facts(standing), as_of, mail))
+    case = _Case(standing, facts.reservoir_facts(standing, as_of), as_of, mail)
+    if _is_out_of_use(standing, as_of):
+        _close_everything(case)
+    else:
+        _bring_up_to_date(case)
     standing.judged_revision = standing.revision
     count_open(standing)
     return True
@@ -104,6 +120,21 @@ def _claimed(reservoir_id: int, even_if_judged: bool) -> Standing | None:
     return claimed
 
 
+def _called_by_time(as_of: datetime) -> list[int]:
+    """Planned samples that have not come and that nobody was told about; open alerts of what has gone out of use."""
+    late = Standing.objects.overdue(as_of).filter(~Exists(_told())).select_related("reservoir__area__site")
+    rules = {rule.site_id: rule for rule in Rule.objects.filter(kind=Kind.OVERDUE, enabled=True)} if late else {}
+    overdue = [s.pk for s in late if _is_past_grace(s, rules.get(s.reservoir.area.site_id), as_of)]
+    retired = Standing.objects.filter(open_alerts__gt=0, reservoir__retired_on__isnull=False)
+    gone = [s.pk for s in retired.select_related("reservoir__area__site") if _is_out_of_use(s, as_of)]
+    return overdue + gone
+
+
+def _is_out_of_use(standing: Standing, as_of: datetime) -> bool:
+    reservoir = standing.reservoir
+    return facts.is_out_of_use(reservoir.retired_on, as_of, reservoir.area.site.zone)
+
+
 def _told() -> QuerySet[Alert]:
     """Alerts that a sample is missing: open ones, and those a person closed after the last sample that came."""
     since_last = Q(sample__drawn_at__gte=OuterRef("last_drawn_at"))
@@ -113,7 +144,7 @@ def _told() -> QuerySet[Alert]:
 
 
 def _is_past_grace(standing: Standing, rule: Rule | None, as_of: datetime) -> bool:
-    if rule is None or standing.next_due_at is None:
+    if rule is None or standing.next_due_at is None or _is_out_of_use(standing, as_of):
         return False
     (known,) = facts.rule_facts([rule])
     reservoir = standing.reservoir
@@ -123,13 +154,21 @@ def _is_past_grace(standing: Standing, rule: Rule | None, as_of: datetime) -> bo
 def _bring_up_to_date(case: _Case) -> None:
     rules = facts.rule_facts(ensure_rules(case.standing.reservoir.area.site))
     findings = _not_settled(case, judge(case.about, rules, case.as_of))
-    was_open = list(
-        Alert.objects.open().filter(reservoir=case.standing.reservoir_id).select_related("sample", "measurand")
-    )
+    was_open = _open_alerts(case)
     heard = {_hear(case, finding, was_open).pk for finding in findings}
     for alert in was_open:
         if alert.pk not in heard:
             _reconsider(case, alert)
+
+
+def _open_alerts(case: _Case) -> list[Alert]:
+    its_own = Alert.objects.open().filter(reservoir=case.standing.reservoir_id)
+    return list(its_own.select_related("sample__point", "measurand"))
+
+
+def _close_everything(case: _Case) -> None:
+    for alert in _open_alerts(case):
+        _close_by_itself(case, alert, Alert.CloseReason.OTHER, "The reservoir was taken out of service.")
 
 
 def _not_settled(case: _Case, findings: list[Finding]) -> list[Finding]:
@@ -230,7 +269,7 @@ def _reconsider(case: _Case, alert: Alert) -> None:
     if alert.family == SAMPLING:
         _close_when_sampled(case, alert)
         return
-    known = facts.open_facts(alert)
+    known = facts.open_facts(alert, case.as_of, case.about.zone)
     if (new_oil := new_oil_word(known, case.about)) is not None:
         note = f"The oil was changed. {sentences.over_sentence(new_oil, case.about.zone)}"
         _close_by_itself(case, alert, Alert.CloseReason.OIL_CHANGED, note)

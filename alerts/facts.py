@@ -1,6 +1,9 @@
 """From rows to the plain facts that the rules are asked with."""
 
 from collections.abc import Iterable
+from datetime import date, datetime, tzinfo
+
+from django.db.models import QuerySet
 
 from alerts.models import Alert, Rule
 from alerts.rules import Kind, OpenFacts, OutlookFacts, ReservoirFacts, RuleFacts
@@ -26,27 +29,42 @@ def rule_facts(rules: Iterable[Rule]) -> list[RuleFacts]:
     ]
 
 
-def reservoir_facts(standing: Standing) -> ReservoirFacts:
+def reservoir_facts(standing: Standing, as_of: datetime) -> ReservoirFacts:
     """Two questions to the database: the outlooks, and the bottle that was drawn last."""
     reservoir = standing.reservoir
-    outlooks = Outlook.objects.filter(reservoir=reservoir).select_related("measurand", "sample")
     last = newest_sample(reservoir)
     return ReservoirFacts(
         criticality=reservoir.criticality,
         interval_days=reservoir.interval_days,
         zone=reservoir.area.site.zone,
-        outlooks=[outlook_facts(row) for row in outlooks if row.measurand.kind != Measurand.Kind.CODE],
+        outlooks=[outlook_facts(row) for row in _speaking(reservoir, as_of)],
         last_sample_id=last.pk if last else None,
         last_drawn_at=last.drawn_at if last else None,
         next_due_at=standing.next_due_at,
     )
 
 
+def _speaking(reservoir: Reservoir, as_of: datetime) -> QuerySet[Outlook]:
+    """The outlooks of the oil in the reservoir: oil that was drained by `as_of` and new oil in its drum say nothing."""
+    return (
+        Outlook.objects.filter(reservoir=reservoir)
+        .exclude(measurand__kind=Measurand.Kind.CODE)
+        .exclude(sample__charge__ended_at__lte=as_of)
+        .exclude(sample__reason=Sample.Reason.NEW_OIL)
+        .select_related("measurand", "sample")
+    )
+
+
 def newest_sample(reservoir: Reservoir) -> Sample | None:
-    """The last bottle that was not set aside; one in doubt was drawn all the same."""
-    drawn = Sample.objects.filter(reservoir=reservoir).exclude(verdict=Sample.Verdict.SET_ASIDE)
-    newest: Sample | None = drawn.order_by("-drawn_at", "-pk").first()
+    """The bottle of the reservoir's own oil that was drawn last and is not set aside."""
+    drawn = Sample.objects.filter(reservoir=reservoir).exclude(reason=Sample.Reason.NEW_OIL)
+    newest: Sample | None = drawn.exclude(verdict=Sample.Verdict.SET_ASIDE).order_by("-drawn_at", "-pk").first()
     return newest
+
+
+def is_out_of_use(retired_on: date | None, as_of: datetime, zone: tzinfo) -> bool:
+    """Whether the day on which something is retired has come, by the clock of its site."""
+    return retired_on is not None and retired_on <= as_of.astimezone(zone).date()
 
 
 def outlook_facts(row: Outlook) -> OutlookFacts:
@@ -62,6 +80,7 @@ def outlook_facts(row: Outlook) -> OutlookFacts:
         is_count=measurand.kind == Measurand.Kind.COUNT,
         is_percent=measurand.scale == Measurand.Scale.PERCENT and bool(row.baseline),
         sample_id=row.sample_id,
+        point_id=sample.point_id if sample else None,
         drawn_at=sample.drawn_at if sample else None,
         charge_id=sample.charge_id if sample else None,
         n=row.n,
@@ -96,12 +115,14 @@ def _level_headroom(row: Outlook) -> float | None:
     return headroom(row.level, limit, scale_spec(row.measurand, row.baseline))
 
 
-def open_facts(alert: Alert) -> OpenFacts:
+def open_facts(alert: Alert, as_of: datetime, zone: tzinfo) -> OpenFacts:
+    sample = alert.sample
     return OpenFacts(
         family=alert.family,
         kind=Kind(alert.kind),
-        since=alert.sample.drawn_at if alert.sample else alert.opened_at,
+        since=sample.drawn_at if sample else alert.opened_at,
         measurand_key=alert.measurand.key if alert.measurand else "",
         charge_id=alert.charge_id,
+        point_id=sample.point_id if sample and not is_out_of_use(sample.point.retired_on, as_of, zone) else None,
         was_better=alert.better_since is not None,
     )

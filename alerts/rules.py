@@ -80,6 +80,7 @@ class OutlookFacts:
     is_count: bool = False
     is_percent: bool = False
     sample_id: int | None = None
+    point_id: int | None = None
     drawn_at: datetime | None = None
     charge_id: int | None = None
     n: int = 0
@@ -176,7 +177,8 @@ class Finding:
 class OpenFacts:
     """An open alert, as far as closing it needs to know. `since` is when its sample was drawn, or when it opened.
 
-    `was_better`: its sample was within bounds already, but against the trend.
+    `point_id` is where its sample was drawn, None where it has none or the point is no longer in use. `was_better`: its
+    sample was within bounds already, but against the trend.
     """
 
     family: str
@@ -184,6 +186,7 @@ class OpenFacts:
     since: datetime
     measurand_key: str = ""
     charge_id: int | None = None
+    point_id: int | None = None
     was_better: bool = False
 
 
@@ -237,8 +240,12 @@ def is_recent(drawn_at: datetime | None, interval_days: int, as_of: datetime) ->
 
 
 def later_word(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | None:
-    """What was measured on an alert's measurand after the sample it rests on; particle counts stand for each other."""
-    later = [o for o in _judged(alert.family, reservoir) if o.drawn_at and o.drawn_at > alert.since]
+    """What was measured on an alert's measurand after the sample it rests on, and at the same point.
+
+    Particle counts stand for each other; two points do not: behind the filter it is always cleaner.
+    """
+    at_its_point = [o for o in _judged(alert.family, reservoir) if alert.point_id in (None, o.point_id)]
+    later = [o for o in at_its_point if o.drawn_at and o.drawn_at > alert.since]
     own = next((o for o in later if o.key == alert.measurand_key), None)
     return own or next((o for o in later if alert.family == DIRT), None)
 
@@ -252,7 +259,8 @@ def still_away(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | No
 def proof_it_is_over(alert: OpenFacts, reservoir: ReservoirFacts) -> OutlookFacts | None:
     """The later measurement that shows that an open alert is over, or None. Ask only when no rule speaks any more.
 
-    The measurand that opened it must have been measured later, and every current measurand of the family must be back.
+    The measurand that opened it must have been measured later at the same point, and every current measurand of the
+    family must be back.
     *Back* is: within its target; or, for an alert about a limit, inside the limit by one code step, or by 10 % of the
     span. An alert over target asks for the target. A margin keeps a value that dances on the line from closing and
     opening the alert with every sample. Where the trend had followed the trouble, one good value against it does not

@@ -1,6 +1,7 @@
 """Background work of the alerts app: thin, ids only, safe to repeat."""
 
 from celery import shared_task
+from django.conf import settings
 from django.utils import timezone
 
 from alerts import deliveries, evaluation
@@ -8,9 +9,12 @@ from alerts import deliveries, evaluation
 
 @shared_task
 def evaluate_changed() -> None:
-    now = timezone.now()
-    evaluation.evaluate_changed(now)
-    evaluation.evaluate_overdue(now)
+    waiting = evaluation.waiting(timezone.now())
+    if len(waiting) == 1:
+        evaluate_reservoir(waiting[0])
+        return
+    for reservoir_id in waiting:
+        evaluate_reservoir.apply_async((reservoir_id,), expires=settings.SWEEP_SECONDS)
 
 
 @shared_task

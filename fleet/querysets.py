@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from datetime import datetime
+from datetime import datetime, timedelta
 from typing import TYPE_CHECKING, Any
 
 from django.db import models
@@ -61,4 +61,6 @@ class StandingQuerySet(models.QuerySet[Any]):
         return self.exclude(revision=models.F("judged_revision"))
 
     def overdue(self, as_of: datetime) -> StandingQuerySet:
-        return self.filter(next_due_at__lt=as_of, reservoir__retired_on=None)
+        """Planned samples that have not come. What is to be retired later is in use till then, anywhere on earth."""
+        in_use = Q(reservoir__retired_on=None) | Q(reservoir__retired_on__gte=(as_of - timedelta(days=1)).date())
+        return self.filter(in_use, next_due_at__lt=as_of)

@@ -28,7 +28,7 @@ def judged(of: Reservoir, as_of: datetime = NOON, mail: bool = True) -> None:
     """The outlook refreshed and the alerts evaluated, as the two tasks do it."""
     refresh_outlook(of.pk, as_of)
     evaluation.evaluate_changed(as_of, mail)
-    evaluation.evaluate_overdue(as_of, mail)
+    evaluation.evaluate_by_time(as_of, mail)
 
 
 def arrives(of: Reservoir, drawn_at: datetime, values: dict[str, float], as_of: datetime = NOON, **more: Any) -> Sample:
