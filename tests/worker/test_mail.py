@@ -4,10 +4,11 @@ from collections.abc import Iterator
 from datetime import timedelta
 
 import pytest
+from django.db import transaction
 from django.utils import timezone
 
 from alerts.models import Delivery
-from samples.tasks import refresh_outlook
+from fleet.refresh import want_refresh
 from tests import builders
 from tests.alerts import scene
 from tests.alerts.scene import PAST
@@ -23,7 +24,8 @@ def a_sample_past_the_limit_is_judged() -> None:
     scene.subscriber(press)
     now = timezone.now()
     builders.sample(press, now - timedelta(days=1), PAST)
-    refresh_outlook.delay(press.pk)
+    with transaction.atomic():
+        want_refresh([press.pk], now)
 
 
 def sent() -> bool:
