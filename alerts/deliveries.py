@@ -3,7 +3,8 @@
 A delivery goes queued → sending → sent. It is claimed by a conditional update, so that of any number of workers one
 sends it, and once it is marked sent nothing sends it again. Between the mail server's yes and that mark a crash can
 make a second copy; it carries the same Message-ID, by which mail programs can tell. A send that fails waits longer each
-time; a claim whose worker died is freed by the sweep.
+time; a claim whose worker died is freed by the sweep, which is later than the longest send. It goes to the address the
+person has now; one that the mail server refuses for good is tried once more and then given up.
 """
 
 import logging
@@ -13,6 +14,7 @@ from datetime import datetime, timedelta
 from typing import Final
 
 from celery import current_app
+from celery.exceptions import SoftTimeLimitExceeded
 from django.conf import settings
 from django.core.exceptions import ValidationError
 from django.core.validators import validate_email
@@ -29,7 +31,15 @@ logger = logging.getLogger(__name__)
 SEND_TASK: Final = "alerts.tasks.send_delivery"
 RETRY_MINUTES: Final = (1, 5, 15, 60, 240, 480, 960)
 MOST_ATTEMPTS: Final = len(RETRY_MINUTES) + 1
+# What a mail server refuses for good is tried once more: the mailbox may have been made meanwhile.
+MOST_REFUSALS: Final = 2
 BROKEN_OFF: Final = "Broken off while being sent."
+# One send takes no longer than this, whatever the mail server does; the worker's hard limit lies between it and
+# DELIVERY_STUCK_SECONDS, so that a claim is never freed while somebody still sends.
+SEND_SECONDS: Final = 240
+SEND_KILL_SECONDS: Final = 300
+# A sweep asks for as many as this, those that wait longest first.
+A_SWEEP: Final = 200
 
 
 def subscriptions_to(alert: Alert, kind: str) -> QuerySet[Subscription]:
@@ -65,17 +75,19 @@ def owe(alert: Alert, reason: str, now: datetime) -> list[Person]:
     return owed
 
 
-def enqueue(delivery_ids: Iterable[int]) -> None:
-    """Ask a worker to send, after commit. A message that is lost, or a broker that is down, does no harm: the sweep
-    finds the row."""
+def enqueue(delivery_ids: Iterable[int], expires: float | None = None) -> None:
+    """Ask a worker to send, after commit; the message holds for `expires` seconds where that is given.
+
+    One that is lost, or a broker that is down, does no harm: the sweep finds the row.
+    """
     for delivery_id in delivery_ids:
-        transaction.on_commit(_request_to_send(delivery_id), robust=True)
+        transaction.on_commit(_request_to_send(delivery_id, expires), robust=True)
 
 
-def _request_to_send(delivery_id: int) -> Callable[[], None]:
+def _request_to_send(delivery_id: int, expires: float | None) -> Callable[[], None]:
     # A function of its own, not a partial: Django names what failed by its __qualname__.
     def ask_to_send() -> None:
-        current_app.send_task(SEND_TASK, args=[delivery_id])
+        current_app.send_task(SEND_TASK, args=[delivery_id], expires=expires)
 
     return ask_to_send
 
@@ -95,14 +107,16 @@ def send(delivery_id: int, now: datetime) -> bool:
     if not claim(delivery_id, now):
         return False
     delivery = mail.with_everything(Delivery.objects.all()).get(pk=delivery_id)
-    if not delivery.person.is_active:
-        return _give_up(delivery, f"{delivery.person} is no longer active here.")
+    if (hindrance := _hindrance(delivery.person)) is not None:
+        return _give_up(delivery, hindrance)
+    _address_now(delivery)
     message = mail.build(delivery)
     try:
         message.send()
-    except (smtplib.SMTPException, OSError) as error:
-        logger.warning("Delivery %s, attempt %s: %s", delivery.pk, delivery.attempts, error)
-        return _put_back(delivery, now, f"{type(error).__name__}: {error}")
+    except (smtplib.SMTPException, OSError, SoftTimeLimitExceeded) as error:
+        logger.warning("Delivery %s, attempt %s: %s", delivery.pk, delivery.attempts, _reason(error))
+        most = MOST_REFUSALS if _is_refused_for_good(error) else MOST_ATTEMPTS
+        return _put_back(delivery, now, _reason(error), most)
     _claimed_rows(delivery).update(
         state=Delivery.State.SENT, sent_at=now, last_error="", message_id=message.extra_headers["Message-ID"]
     )
@@ -110,11 +124,14 @@ def send(delivery_id: int, now: datetime) -> bool:
 
 
 def send_due(now: datetime) -> int:
-    """Free claims whose worker is gone, and enqueue everything that is due; says how many."""
+    """Free claims whose worker is gone, and enqueue what has been due longest, as many as a sweep takes; says how many.
+
+    The messages expire with the next sweep, which asks again: a slow mail server does not pile them up.
+    """
     for delivery in Delivery.objects.stuck(now - timedelta(seconds=settings.DELIVERY_STUCK_SECONDS)):
         _put_back(delivery, now, BROKEN_OFF, delay=timedelta())
-    due = list(Delivery.objects.due(now).values_list("pk", flat=True))
-    enqueue(due)
+    due = list(Delivery.objects.due(now).order_by("due_at", "pk").values_list("pk", flat=True)[:A_SWEEP])
+    enqueue(due, expires=settings.SWEEP_SECONDS)
     return len(due)
 
 
@@ -123,8 +140,41 @@ def retry_delay(attempts: int) -> timedelta:
     return timedelta(minutes=RETRY_MINUTES[min(attempts, len(RETRY_MINUTES)) - 1])
 
 
-def _put_back(delivery: Delivery, now: datetime, error: str, delay: timedelta | None = None) -> bool:
-    if delivery.attempts >= MOST_ATTEMPTS:
+def _hindrance(person: Person) -> str | None:
+    """Why a person can get no mail now, or None."""
+    if not person.is_active:
+        return f"{person} is no longer active here."
+    return None if _is_address(person.email) else f"{person} has no mail address any more."
+
+
+def _address_now(delivery: Delivery) -> None:
+    """Send to where the person is reached now; at a new address the tries begin anew."""
+    if delivery.address != delivery.person.email:
+        delivery.address, delivery.attempts = delivery.person.email, 1
+        _claimed_rows(delivery).update(address=delivery.address, attempts=delivery.attempts)
+
+
+def _is_refused_for_good(error: Exception) -> bool:
+    """Whether the mail server says that it will never take mail for the address: an answer of 500 or more to RCPT."""
+    if not isinstance(error, smtplib.SMTPRecipientsRefused):
+        return False
+    return all(code >= 500 for code, _ in error.recipients.values())
+
+
+def _reason(error: Exception) -> str:
+    """What went wrong, to be read by people."""
+    if isinstance(error, SoftTimeLimitExceeded):
+        return f"The mail server took longer than {SEND_SECONDS} s."
+    if isinstance(error, smtplib.SMTPRecipientsRefused):
+        answers = [f"{to}: {code} {text.decode(errors='replace')}" for to, (code, text) in error.recipients.items()]
+        return f"The mail server refused {'; '.join(answers)}"
+    return f"{type(error).__name__}: {error}"
+
+
+def _put_back(
+    delivery: Delivery, now: datetime, error: str, most: int = MOST_ATTEMPTS, delay: timedelta | None = None
+) -> bool:
+    if delivery.attempts >= most:
         return _give_up(delivery, error)
     due_at = now + (retry_delay(delivery.attempts) if delay is None else delay)
     _claimed_rows(delivery).update(state=Delivery.State.QUEUED, due_at=due_at, claimed_at=None, last_error=error[:500])

@@ -22,7 +22,7 @@ def evaluate_reservoir(reservoir_id: int) -> None:
     evaluation.evaluate_reservoir(reservoir_id, timezone.now(), even_if_judged=True)
 
 
-@shared_task
+@shared_task(soft_time_limit=deliveries.SEND_SECONDS, time_limit=deliveries.SEND_KILL_SECONDS)
 def send_delivery(delivery_id: int) -> None:
     deliveries.send(delivery_id, timezone.now())
 

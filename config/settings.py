@@ -216,8 +216,9 @@ CELERY_BEAT_SCHEDULE = {
 AFTER_FLEET_CHANGE_TASKS = ["samples.tasks.refresh_outlook"]  # each called with one reservoir's id
 AFTER_REFRESH_TASKS = ["alerts.tasks.evaluate_changed"]  # each called without arguments
 
-# How long a claimed delivery may stay in "sending" before it counts as broken off.
-DELIVERY_STUCK_SECONDS = env.float("SILTWATCH_DELIVERY_STUCK_SECONDS", 120.0)
+# How long a claimed delivery may stay in "sending" before it counts as broken off. Longer than the longest send, which
+# the worker ends after 300 s: freed too early, a second copy would go out.
+DELIVERY_STUCK_SECONDS = env.float("SILTWATCH_DELIVERY_STUCK_SECONDS", 480.0)
 
 LOGGING = {
     "version": 1,

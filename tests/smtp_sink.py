@@ -38,6 +38,7 @@ class SmtpSink:
         self.attempts = 0
         self._refusals = 0
         self._reply = ""
+        self._refused_addresses: dict[str, str] = {}
         self._held: set[Stage] = set()
         self.host = "127.0.0.1"
         with socket.create_server((self.host, 0)) as probe:
@@ -48,6 +49,10 @@ class SmtpSink:
     def refuse(self, times: int, reply: str = "451 4.3.0 Try again later") -> None:
         """Answer the next `times` mails with this reply instead of accepting them."""
         self._refusals, self._reply = times, reply
+
+    def refuse_address(self, address: str, reply: str = "550 5.1.1 No such mailbox") -> None:
+        """Answer RCPT for this address with this reply."""
+        self._refused_addresses[address] = reply
 
     def hold(self, stage: Stage) -> None:
         """Stall until `release()`: at the greeting (EHLO), before the mail is kept (DATA), or after it is kept but
@@ -60,6 +65,7 @@ class SmtpSink:
     def clear(self) -> None:
         self.release()
         self.messages, self.attempts, self._refusals = [], 0, 0
+        self._refused_addresses.clear()
 
     def wait_for(self, count: int, timeout: float = 15.0) -> list[Received]:
         """Wait until at least `count` mails have come; fail with what has come when they do not."""
@@ -80,6 +86,14 @@ class SmtpSink:
         session.host_name = hostname
         await self._wait("EHLO")
         return responses
+
+    async def handle_RCPT(  # noqa: N802 - aiosmtpd's name
+        self, server: SMTP, session: Session, envelope: Envelope, address: str, rcpt_options: list[str]
+    ) -> str:
+        if address in self._refused_addresses:
+            return self._refused_addresses[address]
+        envelope.rcpt_tos.append(address)
+        return "250 2.1.5 OK"
 
     async def handle_DATA(self, server: SMTP, session: Session, envelope: Envelope) -> str:  # noqa: N802 - aiosmtpd's name
         self.attempts += 1

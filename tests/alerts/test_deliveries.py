@@ -1,11 +1,17 @@
 """How one mail is sent once: claims, failures that wait longer, and claims whose worker died."""
 
+import json
+import re
 from concurrent.futures import ThreadPoolExecutor
 from datetime import timedelta
+from pathlib import Path
 from threading import Barrier
 
 import pytest
 from celery import current_app
+from celery.exceptions import SoftTimeLimitExceeded
+from django.conf import settings as django_settings
+from django.core.mail import EmailMultiAlternatives
 from django.db import IntegrityError, connection, transaction
 from kombu.exceptions import OperationalError
 from pytest_django import DjangoCaptureOnCommitCallbacks, Settings
@@ -13,6 +19,7 @@ from redis import Redis
 
 from alerts import deliveries
 from alerts.models import Alert, Delivery
+from alerts.tasks import send_delivery
 from fleet.models import Person
 from tests.alerts import scene
 from tests.alerts.scene import PAST
@@ -83,6 +90,81 @@ def test_waits_grow_and_after_eight_tries_it_is_given_up(delivery: Delivery, smt
     assert (delivery.state, delivery.attempts) == ("failed", 8)
     assert not deliveries.send(delivery.pk, now + timedelta(days=9))
     assert smtp_sink.attempts == 8
+
+
+def test_a_send_ends_before_its_claim_is_freed() -> None:
+    # After the soft limit the connection is closed politely, which takes one more answer of the mail server.
+    assert deliveries.SEND_SECONDS + django_settings.EMAIL_TIMEOUT < deliveries.SEND_KILL_SECONDS
+    source = Path(django_settings.BASE_DIR, "config", "settings.py").read_text()
+    (default,) = re.findall(r'"SILTWATCH_DELIVERY_STUCK_SECONDS", ([\d.]+)', source)
+    assert float(default) > deliveries.SEND_KILL_SECONDS
+    assert send_delivery.soft_time_limit == deliveries.SEND_SECONDS
+    assert send_delivery.time_limit == deliveries.SEND_KILL_SECONDS
+
+
+def test_a_send_that_takes_too_long_is_put_back(delivery: Delivery, monkeypatch: pytest.MonkeyPatch) -> None:
+    def stall(_: EmailMultiAlternatives) -> None:
+        raise SoftTimeLimitExceeded
+
+    monkeypatch.setattr(EmailMultiAlternatives, "send", stall)
+    assert not deliveries.send(delivery.pk, NOON)
+    delivery.refresh_from_db()
+    assert (delivery.state, delivery.last_error) == ("queued", "The mail server took longer than 240 s.")
+
+
+def test_an_address_that_is_refused_for_good_is_tried_once_more(delivery: Delivery, smtp_sink: SmtpSink) -> None:
+    smtp_sink.refuse_address(delivery.address)
+    deliveries.send(delivery.pk, NOON)
+    delivery.refresh_from_db()
+    assert (delivery.state, delivery.attempts) == ("queued", 1)
+    deliveries.send(delivery.pk, delivery.due_at)
+    delivery.refresh_from_db()
+    assert (delivery.state, delivery.attempts) == ("failed", 2)
+    assert delivery.last_error == f"The mail server refused {delivery.address}: 550 5.1.1 No such mailbox"
+
+
+def test_an_address_that_is_refused_for_now_is_tried_on(delivery: Delivery, smtp_sink: SmtpSink) -> None:
+    smtp_sink.refuse_address(delivery.address, "450 4.2.1 Mailbox is busy")
+    deliveries.send(delivery.pk, NOON)
+    deliveries.send(delivery.pk, NOON + timedelta(minutes=1))
+    delivery.refresh_from_db()
+    assert (delivery.state, delivery.attempts) == ("queued", 2)
+
+
+def test_a_retry_goes_to_where_the_person_is_reached_now(delivery: Delivery, smtp_sink: SmtpSink) -> None:
+    smtp_sink.refuse_address(delivery.address)
+    deliveries.send(delivery.pk, NOON)
+    Person.objects.update(email="moved@plant.example")
+    assert deliveries.send(delivery.pk, NOON + timedelta(minutes=1))
+    (received,) = smtp_sink.messages
+    delivery.refresh_from_db()
+    assert received.recipients == ("moved@plant.example",)
+    assert (delivery.address, delivery.attempts) == ("moved@plant.example", 1)
+
+
+def test_nobody_without_an_address_is_written_to(delivery: Delivery, smtp_sink: SmtpSink) -> None:
+    Person.objects.update(email="")
+    assert not deliveries.send(delivery.pk, NOON)
+    delivery.refresh_from_db()
+    assert delivery.state == "failed"
+    assert "no mail address" in delivery.last_error
+
+
+def test_a_sweep_asks_for_what_waits_longest_and_no_more(
+    delivery: Delivery,
+    broker: Redis,
+    monkeypatch: pytest.MonkeyPatch,
+    django_capture_on_commit_callbacks: DjangoCaptureOnCommitCallbacks,
+) -> None:
+    monkeypatch.setattr(deliveries, "A_SWEEP", 1)
+    older = Delivery.objects.create(
+        alert=delivery.alert, person=delivery.person, reason="forecast", address="x@y.example", due_at=days_ago(1)
+    )
+    with django_capture_on_commit_callbacks(execute=True):
+        assert deliveries.send_due(NOON) == 1
+    (message,) = [json.loads(raw) for raw in broker.lrange("celery", 0, -1)]
+    assert message["headers"]["argsrepr"] == f"[{older.pk}]"
+    assert message["headers"]["expires"]
 
 
 def test_the_sweep_frees_a_claim_whose_worker_died(delivery: Delivery, settings: Settings) -> None:
