@@ -177,9 +177,12 @@ CELERY_ACCEPT_CONTENT = ["json"]
 CELERY_TASK_ACKS_LATE = True
 CELERY_TASK_REJECT_ON_WORKER_LOST = True
 CELERY_WORKER_PREFETCH_MULTIPLIER = 1
-# Whole fleets go through a queue of their own, so that one saved sample never waits behind them.
-CELERY_TASK_QUEUES = [Queue("celery"), Queue("bulk")]
-CELERY_TASK_ROUTES = {"samples.tasks.refresh_many": {"queue": "bulk"}}
+# Whole fleets and mail have queues of their own: a saved sample waits neither for them nor for a slow mail server.
+CELERY_TASK_QUEUES = [Queue("celery"), Queue("bulk"), Queue("mail")]
+CELERY_TASK_ROUTES = {
+    "samples.tasks.refresh_many": {"queue": "bulk"},
+    "alerts.tasks.send_delivery": {"queue": "mail"},
+}
 CELERY_BROKER_CONNECTION_RETRY_ON_STARTUP = True
 CELERY_BROKER_TRANSPORT_OPTIONS = {"visibility_timeout": 900, "socket_connect_timeout": 2, "socket_timeout": 30}
 # Nobody waits at a form for a broker that is down: the sweep finds the row.

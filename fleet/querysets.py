@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 from django.db import models
 from django.db.models import Q
+from django.db.models.functions import Cast, Now
 
 if TYPE_CHECKING:
     from fleet.models import Reservoir
@@ -14,7 +15,8 @@ if TYPE_CHECKING:
 
 class ReservoirQuerySet(models.QuerySet[Any]):
     def active(self) -> ReservoirQuerySet:
-        return self.filter(retired_on=None)
+        """In use today; what is to be retired later still is."""
+        return self.filter(Q(retired_on=None) | Q(retired_on__gt=Cast(Now(), models.DateField())))
 
     def with_place(self) -> ReservoirQuerySet:
         return self.select_related("area__site", "machine")

@@ -9,6 +9,7 @@ from collections.abc import Callable, Mapping
 from pathlib import Path
 
 import redis
+from django.conf import settings
 
 from config.stack.folders import CHECKOUT
 from config.stack.leash import tie
@@ -79,7 +80,7 @@ class Worker(CeleryProcess):
 
     def idle(self) -> bool:
         """No message waits and none is being worked on (they are acknowledged late)."""
-        waiting = self.broker.llen("celery") or self.broker.llen("bulk")
+        waiting = any(self.broker.llen(queue.name) for queue in settings.CELERY_TASK_QUEUES)
         return not waiting and not self.broker.hlen("unacked")
 
     def wait_idle(self, timeout: float = 15.0) -> None:

@@ -162,7 +162,7 @@ def test_a_sweep_asks_for_what_waits_longest_and_no_more(
     )
     with django_capture_on_commit_callbacks(execute=True):
         assert deliveries.send_due(NOON) == 1
-    (message,) = [json.loads(raw) for raw in broker.lrange("celery", 0, -1)]
+    (message,) = [json.loads(raw) for raw in broker.lrange("mail", 0, -1)]
     assert message["headers"]["argsrepr"] == f"[{older.pk}]"
     assert message["headers"]["expires"]
 
@@ -190,9 +190,9 @@ def test_the_sweep_asks_the_worker_after_commit(
 ) -> None:
     with django_capture_on_commit_callbacks(execute=True):
         assert deliveries.send_due(NOON) == 1
-        assert broker.llen("celery") == 0
-    assert broker.llen("celery") == 1
-    assert b"alerts.tasks.send_delivery" in broker.lrange("celery", 0, 0)[0]
+        assert broker.llen("mail") == 0
+    assert broker.llen("mail") == 1
+    assert b"alerts.tasks.send_delivery" in broker.lrange("mail", 0, 0)[0]
 
 
 def test_nobody_who_has_left_gets_it(delivery: Delivery, smtp_sink: SmtpSink) -> None:
