@@ -1,4 +1,4 @@
-"""Fixtures that more than one part of the tests needs. The servers behind them come from tests/services.py."""
+"""Fixtures that more than one part of the tests needs. The servers behind them come from tests/servers.py."""
 
 import os
 import shutil
@@ -16,7 +16,7 @@ from pytest_django.live_server_helper import LiveServer
 
 from fleet import catalogue
 from fleet.models import Measurand
-from tests.services import sink_key
+from tests.servers import sink_key
 from tests.smtp_sink import SmtpSink
 from tests.worker_process import CeleryProcess, Worker
 

@@ -4,7 +4,7 @@ import signal
 import subprocess
 import sys
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from config.stack.children import Child, Program
@@ -51,7 +51,9 @@ class Application:
 
     def mailbox(self, port: int) -> Program:
         arguments = ("mailbox", "--host", "127.0.0.1", "--port", str(port), "--folder", str(self.state / "mail"))
-        return self._kept_up("the mail catcher", "mail", signal.SIGKILL, "-m", "config.stack", *arguments)
+        return replace(
+            self._kept_up("the mail catcher", "mail", signal.SIGKILL, "-m", "config.stack", *arguments), is_extra=True
+        )
 
     def _kept_up(self, name: str, log: str, death_signal: int, *arguments: str) -> Program:
         argv = (sys.executable, *arguments)

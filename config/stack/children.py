@@ -20,7 +20,7 @@ QUOTED_LINES = 15
 
 @dataclass(frozen=True)
 class Program:
-    """What to run. `restarts` marks a child without state, which may simply be started again when it ends."""
+    """What to run. `restarts`: it has no state and is started again when it ends; `is_extra`: it may be missing."""
 
     name: str
     argv: tuple[str, ...]
@@ -31,6 +31,7 @@ class Program:
     death_signal: int = signal.SIGKILL
     stop_seconds: float = 15.0
     restarts: bool = False
+    is_extra: bool = False
     account: Account | None = None
 
 

@@ -52,17 +52,18 @@ def _serve(supervisor: Supervisor, state: Path, lock: Lock) -> None:
     begun = time.monotonic()
     logs = fresh_logs(state)
     servers = _start_servers(supervisor, state, logs)
+    prepare(supervisor, Application(state, logs, os.environ | _settings(state, wanted_port(), 0) | servers))
+    # Ports are chosen as late as can be: another start may be looking for one too.
     host, port, mail_port = bind_address(), free_port(wanted_port(), bind_address()), _mail_port()
     settings = _settings(state, port, mail_port) | servers
     application = Application(state, logs, os.environ | settings)
     _keep_environment(state, settings)
-    prepare(supervisor, application)
-    web = supervisor.start(application.web(host, port))
-    supervisor.start(application.worker())
-    supervisor.start(application.beat())
     if mail_port:
         private_folder(state / "mail")
         supervisor.start(application.mailbox(mail_port))
+    web = supervisor.start(application.web(host, port))
+    supervisor.start(application.worker())
+    supervisor.start(application.beat())
     wait_for_health(port, web, application.env["SILTWATCH_HOSTS"].split(",")[0])
     lock.note(f"process {os.getpid()}, {application.env['SILTWATCH_URL']}")
     _greet(application, mail_port, port, time.monotonic() - begun)
@@ -125,6 +126,8 @@ def _greet(application: Application, mail_port: int, port: int, seconds: float) 
         say(f"(Port {wanted_port()} is taken, so it listens on {port}.)")
     if logins := application.logins():
         say(f"\n{logins}")
+    else:
+        say("\nPeople are added with: .venv/bin/python -m config.stack manage add_person NAME --role administrator")
     if mail_port:
         say(f"\nMails go nowhere; they are kept in {application.state / 'mail'}")
     say(f"Logs: {application.logs}\nStop with Ctrl-C.")

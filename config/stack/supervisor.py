@@ -63,7 +63,7 @@ class Supervisor:
     def watch(self) -> None:
         """Stay until a stop is asked for (KeyboardInterrupt) or a child cannot be kept up (StackError)."""
         while True:
-            for place in self.places:
+            for place in list(self.places):
                 self._look_at(place)
             time.sleep(TICK)
 
@@ -100,6 +100,10 @@ class Supervisor:
             raise StackError(f"{name} ended with exit code {code}; the rest cannot run without it.{child.last_words()}")
         lived = time.monotonic() - child.started
         place.quick_failures = place.quick_failures + 1 if lived < QUICK_SECONDS else 1
+        if place.quick_failures >= QUICK_FAILURES and place.program.is_extra:
+            self.say(f"{name} failed {QUICK_FAILURES} times in a row; going on without it.{child.last_words()}")
+            self.places = [other for other in self.places if other is not place]
+            return
         if place.quick_failures >= QUICK_FAILURES:
             raise StackError(f"{name} failed {QUICK_FAILURES} times in a row; giving up.{child.last_words()}")
         pause = min(2.0 ** (place.quick_failures - 1), LONGEST_PAUSE)

@@ -138,3 +138,15 @@ def test_nor_a_child_under_another_account() -> None:
 def test_nor_where_the_kernel_gives_no_help() -> None:
     watcher = "supervisor.Child.__init__.__globals__['tie'] = lambda signal: None; s._watcher = Watcher()"
     wait_until_gone(kill_the_supervisor_of(SUPERVISED.format(account=None, watcher=watcher)))
+
+
+@pytest.mark.usefixtures("hurried")
+def test_what_is_only_an_extra_is_done_without(python: Builder) -> None:
+    said: list[str] = []
+    with Supervisor(said.append) as supervisor:
+        supervisor.start(python("the mail catcher", "raise SystemExit(3)", restarts=True, is_extra=True))
+        stays = supervisor.start(python("the database", "import time; time.sleep(600)"))
+        look = supervisor_module.Supervisor._look_at
+        wait_for(lambda: look(supervisor, supervisor.places[0]) or len(supervisor.places) == 1)
+        assert stays.ended() is None
+    assert "going on without it" in said[-1]

@@ -1,6 +1,6 @@
 """A pytest plugin, loaded before Django's settings: a database, a broker and a mail server for this run alone.
 
-`-p tests.services` in pyproject.toml names it. With DATABASE_URL or REDIS_URL set, that server is used instead.
+`-p tests.servers` in pyproject.toml names it. With DATABASE_URL or REDIS_URL set, that server is used instead.
 """
 
 import contextlib
