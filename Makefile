@@ -5,6 +5,7 @@ VENV := .venv
 STAMP := $(VENV)/.synced
 BIN := $(VENV)/bin
 UV := uv==0.13.9
+SYNC = $(BIN)/uv pip sync --quiet --require-hashes --python $(BIN)/python requirements.lock
 # Long enough for Django's own check of it; it signs nothing that is kept.
 CHECK_ENV := SILTWATCH_SECRET_KEY=only-for-checks-0123456789-abcdefghijklmnopqrstuvwxyz-ABCDEFGHIJKLM
 
@@ -36,7 +37,7 @@ $(STAMP): requirements.lock
 	@test -x $(BIN)/python || { echo "Making $(VENV) with $(PYTHON) …"; $(PYTHON) -m venv $(VENV); }
 	@test -x $(BIN)/uv || $(BIN)/python -m pip install --quiet --disable-pip-version-check $(UV)
 	@echo "Installing the packages of requirements.lock …"
-	@$(BIN)/uv pip sync --quiet --require-hashes --python $(BIN)/python requirements.lock
+	@$(SYNC) || { echo "Trying again with the certificates of this system …"; $(SYNC) --system-certs; }
 	@touch $@
 
 lock: $(STAMP) ## choose the newest versions that pyproject.toml allows, and write them down with their hashes
