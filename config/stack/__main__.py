@@ -3,6 +3,7 @@
 import argparse
 import os
 import signal
+import socket
 import subprocess
 import sys
 from pathlib import Path
@@ -48,6 +49,7 @@ def _parser() -> argparse.ArgumentParser:
     command = commands.add_parser("mailbox", help="catch mail and keep it as files")
     command.add_argument("--host", default="127.0.0.1")
     command.add_argument("--port", type=int, default=8025)
+    command.add_argument("--socket", type=int, help="the number of an inherited socket that listens already")
     command.add_argument("--folder", type=Path, required=True)
     command.set_defaults(do=_mailbox)
     command = commands.add_parser("health", help="succeed when the web server on this machine answers well")
@@ -78,7 +80,12 @@ def _manage(options: argparse.Namespace) -> int:
 
 
 def _mailbox(options: argparse.Namespace) -> int:
-    mailbox.serve(options.host, options.port, options.folder)
+    if options.socket is None:
+        listens = socket.create_server((options.host, options.port))
+    else:
+        listens = socket.socket(fileno=options.socket)
+    with listens:
+        mailbox.serve(listens, options.folder)
     return 0
 
 

@@ -1,5 +1,6 @@
-"""Where the web server listens, and whether it answers."""
+"""Where the web server and the mail catcher listen, and whether the first answers."""
 
+import errno
 import http.client
 import os
 import socket
@@ -10,6 +11,7 @@ from config.stack.errors import StackError
 
 FIRST_PORT = 8000
 PORTS_TRIED = 100
+BACKLOG = 512
 READY_SECONDS = 90.0
 
 
@@ -24,17 +26,19 @@ def wanted_port() -> int:
     return int(text)
 
 
-def free_port(first: int, host: str) -> int:
-    """The first port from `first` upwards that nobody listens on."""
-    for port in range(first, min(first + PORTS_TRIED, 65_536)):
-        with socket.socket(socket.AF_INET, socket.SOCK_STREAM) as probe:
-            probe.setsockopt(socket.SOL_SOCKET, socket.SO_REUSEADDR, 1)
-            try:
-                probe.bind((host, port))
-            except OSError:
-                continue
-            return port
-    raise StackError(f"No free port from {first} to {first + PORTS_TRIED - 1} on {host}: set SILTWATCH_PORT.")
+def listen(first: int, host: str) -> socket.socket:
+    """A socket that listens on the first free port from `first` upwards, for a child to inherit.
+
+    Whoever holds it has the port: between choosing one and serving on it nobody else can take it.
+    """
+    last = min(first + PORTS_TRIED - 1, 65_535)
+    for port in range(first, last + 1):
+        try:
+            return socket.create_server((host, port), backlog=BACKLOG)
+        except OSError as error:
+            if error.errno not in {errno.EADDRINUSE, errno.EACCES}:
+                raise StackError(f"Nothing can listen on {host}: {error.strerror or error}.") from error
+    raise StackError(f"No free port from {first} to {last} on {host}.")
 
 
 def health(port: int, host: str = "localhost", secure: bool = False) -> int:

@@ -1,6 +1,7 @@
 """Siltwatch's own processes: the steps before serving, then the web server, the worker and beat."""
 
 import signal
+import socket
 import subprocess
 import sys
 from collections.abc import Mapping
@@ -15,6 +16,8 @@ from config.stack.supervisor import Supervisor
 WEB_WORKERS = "2"
 WEB_THREADS = "4"
 TASKS_AT_ONCE = "2"
+FIRST_PERSON = """Nobody can log in yet. Add the first person, in another terminal here, with
+  .venv/bin/python -m config.stack manage add_person NAME --role administrator"""
 
 
 @dataclass(frozen=True)
@@ -27,11 +30,13 @@ class Application:
         argv = (sys.executable, "manage.py", *arguments)
         return Program(f"manage.py {arguments[0]}", argv, self.env, CHECKOUT, self.logs / f"{arguments[0]}.log")
 
-    def web(self, host: str, port: int) -> Program:
-        arguments = ("config.wsgi", "--bind", f"{host}:{port}", "--workers", WEB_WORKERS, "--threads", WEB_THREADS)
+    def web(self, listens: socket.socket) -> Program:
+        bind = f"fd://{listens.fileno()}"
+        arguments = ("config.wsgi", "--bind", bind, "--workers", WEB_WORKERS, "--threads", WEB_THREADS)
         more = ("--graceful-timeout", "10", "--no-control-socket", "--access-logfile", "-")
         # A killed supervisor takes the broker and the database along, so the master does not wait for open requests.
-        return self._kept_up("the web server", "web", signal.SIGQUIT, "-m", "gunicorn", *arguments, *more)
+        program = self._kept_up("the web server", "web", signal.SIGQUIT, "-m", "gunicorn", *arguments, *more)
+        return replace(program, listens=listens)
 
     def worker(self) -> Program:
         arguments = (
@@ -49,11 +54,14 @@ class Application:
         arguments = ("beat", "--schedule", str(self.state / "beat-schedule"), "--pidfile", "", "--loglevel", "WARNING")
         return self._kept_up("beat", "beat", signal.SIGKILL, "-m", "celery", "-A", "config", *arguments)
 
-    def mailbox(self, port: int) -> Program:
-        arguments = ("mailbox", "--host", "127.0.0.1", "--port", str(port), "--folder", str(self.state / "mail"))
-        return replace(
-            self._kept_up("the mail catcher", "mail", signal.SIGKILL, "-m", "config.stack", *arguments), is_extra=True
-        )
+    def mailbox(self, listens: socket.socket) -> Program:
+        arguments = ("mailbox", "--socket", str(listens.fileno()), "--folder", str(private_folder(self.mail)))
+        program = self._kept_up("the mail catcher", "mail", signal.SIGKILL, "-m", "config.stack", *arguments)
+        return replace(program, listens=listens, is_extra=True)
+
+    @property
+    def mail(self) -> Path:
+        return self.state / "mail"
 
     def _kept_up(self, name: str, log: str, death_signal: int, *arguments: str) -> Program:
         argv = (sys.executable, *arguments)
@@ -66,18 +74,16 @@ class Application:
         return self.env.get("SILTWATCH_DEMO", "1") != "0"
 
     def logins(self) -> str:
-        if not self.wants_demo:
-            return ""
-        asked = subprocess.run(
-            self.manage("demo", "--logins").argv,
-            env=dict(self.env),
-            cwd=CHECKOUT,
-            capture_output=True,
-            text=True,
-            check=False,
-        )
+        """Who can log in to the demo, or how to add the first person; empty where real people log in already."""
+        if logins := self._ask("demo", "--logins"):
+            return logins
+        return FIRST_PERSON if self._ask("count_people") == "0" else ""
+
+    def _ask(self, *arguments: str) -> str:
+        argv = self.manage(*arguments).argv
+        asked = subprocess.run(argv, env=dict(self.env), cwd=CHECKOUT, capture_output=True, text=True, check=False)
         if asked.returncode != 0:
-            raise StackError(f"manage.py demo --logins failed:\n{asked.stderr.strip()}")
+            raise StackError(f"manage.py {' '.join(arguments)} failed:\n{asked.stderr.strip()}")
         return asked.stdout.strip()
 
 

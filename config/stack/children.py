@@ -3,6 +3,7 @@
 import contextlib
 import os
 import signal
+import socket
 import subprocess
 import time
 from collections import deque
@@ -20,7 +21,11 @@ QUOTED_LINES = 15
 
 @dataclass(frozen=True)
 class Program:
-    """What to run. `restarts`: it has no state and is started again when it ends; `is_extra`: it may be missing."""
+    """What to run.
+
+    `restarts`: it has no state and is started again when it ends; `is_extra`: it may be missing; `listens`: a socket
+    that each of its lives inherits.
+    """
 
     name: str
     argv: tuple[str, ...]
@@ -32,6 +37,7 @@ class Program:
     stop_seconds: float = 15.0
     restarts: bool = False
     is_extra: bool = False
+    listens: socket.socket | None = None
     account: Account | None = None
 
 
@@ -60,6 +66,7 @@ class Child:
             stdout=log,
             stderr=subprocess.STDOUT if log else None,
             start_new_session=True,
+            pass_fds=(program.listens.fileno(),) if program.listens else (),
             preexec_fn=tie(program.death_signal),  # noqa: PLW1509 - the supervisor has one thread
             user=account.uid if account else None,
             group=account.gid if account else None,

@@ -2,6 +2,7 @@
 
 import asyncio
 import secrets
+import socket
 import time
 from pathlib import Path
 
@@ -23,13 +24,13 @@ class FileBox:
         return "250 Kept"
 
 
-async def _serve(host: str, port: int, folder: Path) -> None:
+async def _serve(listens: socket.socket, folder: Path) -> None:
     loop = asyncio.get_running_loop()
-    server = await loop.create_server(lambda: SMTP(FileBox(folder), loop=loop), host, port)
+    server = await loop.create_server(lambda: SMTP(FileBox(folder), loop=loop), sock=listens)
     async with server:
         await server.serve_forever()
 
 
-def serve(host: str, port: int, folder: Path) -> None:
+def serve(listens: socket.socket, folder: Path) -> None:
     folder.mkdir(parents=True, exist_ok=True)
-    asyncio.run(_serve(host, port, folder))
+    asyncio.run(_serve(listens, folder))

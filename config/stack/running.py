@@ -1,12 +1,14 @@
 """`make run`: the whole of Siltwatch on this machine, from the database to the mail catcher."""
 
+import contextlib
 import json
 import os
 import signal
+import socket
 import time
 from pathlib import Path
 
-from config.stack.addresses import bind_address, free_port, wait_for_health, wanted_port
+from config.stack.addresses import bind_address, listen, wait_for_health, wanted_port
 from config.stack.application import Application, fresh_logs, prepare
 from config.stack.broker import Broker, start_broker
 from config.stack.database import kept_database, start_database
@@ -49,25 +51,32 @@ def running_environment() -> dict[str, str]:
 
 
 def _serve(supervisor: Supervisor, state: Path, lock: Lock) -> None:
-    begun = time.monotonic()
+    begun, first_port = time.monotonic(), wanted_port()
     logs = fresh_logs(state)
-    servers = _start_servers(supervisor, state, logs)
-    prepare(supervisor, Application(state, logs, os.environ | _settings(state, wanted_port(), 0) | servers))
-    # Ports are chosen as late as can be: another start may be looking for one too.
-    host, port, mail_port = bind_address(), free_port(wanted_port(), bind_address()), _mail_port()
-    settings = _settings(state, port, mail_port) | servers
-    application = Application(state, logs, os.environ | settings)
-    _keep_environment(state, settings)
-    if mail_port:
-        private_folder(state / "mail")
-        supervisor.start(application.mailbox(mail_port))
-    web = supervisor.start(application.web(host, port))
+    settings = _start_servers(supervisor, state, logs) | _settings(state)
+    prepare(supervisor, Application(state, logs, os.environ | settings))
+    with contextlib.ExitStack() as sockets:
+        web_socket = sockets.enter_context(listen(first_port, bind_address()))
+        if mail_socket := _mail_socket():
+            sockets.enter_context(mail_socket)
+        settings |= _addresses(web_socket, mail_socket)
+        application = Application(state, logs, os.environ | settings)
+        _keep_environment(state, settings)
+        _start_application(supervisor, application, web_socket, mail_socket)
+        lock.note(f"process {os.getpid()}, {application.env['SILTWATCH_URL']}")
+        _greet(application, _port(web_socket), mail_socket is not None, time.monotonic() - begun)
+        supervisor.watch()
+
+
+def _start_application(
+    supervisor: Supervisor, application: Application, web_socket: socket.socket, mail_socket: socket.socket | None
+) -> None:
+    if mail_socket:
+        supervisor.start(application.mailbox(mail_socket))
+    web = supervisor.start(application.web(web_socket))
     supervisor.start(application.worker())
     supervisor.start(application.beat())
-    wait_for_health(port, web, application.env["SILTWATCH_HOSTS"].split(",")[0])
-    lock.note(f"process {os.getpid()}, {application.env['SILTWATCH_URL']}")
-    _greet(application, mail_port, port, time.monotonic() - begun)
-    supervisor.watch()
+    wait_for_health(_port(web_socket), web, application.env["SILTWATCH_HOSTS"].split(",")[0])
 
 
 def _start_servers(supervisor: Supervisor, state: Path, logs: Path) -> dict[str, str]:
@@ -84,29 +93,43 @@ def _start_servers(supervisor: Supervisor, state: Path, logs: Path) -> dict[str,
     return servers
 
 
-def _settings(state: Path, port: int, mail_port: int) -> dict[str, str]:
-    """What Django needs beyond the servers; a value that the operator has set stays."""
+def _settings(state: Path) -> dict[str, str]:
+    """What Django needs beside the servers; a value that the operator has set stays."""
     wanted = {
         "DJANGO_SETTINGS_MODULE": "config.settings",
         "SILTWATCH_SECRET_KEY": secret_key(state),
         "SILTWATCH_PLAIN_HTTP": "1",
-        "SILTWATCH_URL": f"http://localhost:{port}",
+        "SILTWATCH_URL": f"http://localhost:{wanted_port()}",
         "SILTWATCH_HOSTS": "localhost,127.0.0.1,[::1]",
         "SILTWATCH_STATIC_ROOT": str(private_folder(state / "static")),
         "PYTHONUNBUFFERED": "1",
     }
-    settings = {name: os.environ.get(name) or value for name, value in wanted.items()}
-    if mail_port:
-        settings |= {
-            "SILTWATCH_SMTP_HOST": "127.0.0.1",
-            "SILTWATCH_SMTP_PORT": str(mail_port),
-            "SILTWATCH_SMTP_TLS": "0",
-        }
-    return settings
+    return {name: os.environ.get(name) or value for name, value in wanted.items()}
 
 
-def _mail_port() -> int:
-    return 0 if os.environ.get("SILTWATCH_SMTP_HOST") else free_port(FIRST_MAIL_PORT, "127.0.0.1")
+def _addresses(web_socket: socket.socket, mail_socket: socket.socket | None) -> dict[str, str]:
+    """What the ports decide, once they are held."""
+    url = os.environ.get("SILTWATCH_URL") or f"http://localhost:{_port(web_socket)}"
+    if mail_socket is None:
+        return {"SILTWATCH_URL": url}
+    smtp = {"HOST": "127.0.0.1", "PORT": str(_port(mail_socket)), "TLS": "0"}
+    return {"SILTWATCH_URL": url} | {f"SILTWATCH_SMTP_{name}": value for name, value in smtp.items()}
+
+
+def _port(listens: socket.socket) -> int:
+    port: int = listens.getsockname()[1]
+    return port
+
+
+def _mail_socket() -> socket.socket | None:
+    """None where a mail server is named, or no port is free: the catcher is an extra."""
+    if os.environ.get("SILTWATCH_SMTP_HOST"):
+        return None
+    try:
+        return listen(FIRST_MAIL_PORT, "127.0.0.1")
+    except StackError as error:
+        say(f"Mails are not caught: {error}")
+        return None
 
 
 def _environment_file(state: Path) -> Path:
@@ -120,14 +143,12 @@ def _keep_environment(state: Path, settings: dict[str, str]) -> None:
         json.dump(settings, file)
 
 
-def _greet(application: Application, mail_port: int, port: int, seconds: float) -> None:
+def _greet(application: Application, port: int, catches_mail: bool, seconds: float) -> None:
     say(f"\nSiltwatch is ready after {seconds:.0f} s: {application.env['SILTWATCH_URL']}")
     if port != wanted_port():
         say(f"(Port {wanted_port()} is taken, so it listens on {port}.)")
     if logins := application.logins():
         say(f"\n{logins}")
-    else:
-        say("\nPeople are added with: .venv/bin/python -m config.stack manage add_person NAME --role administrator")
-    if mail_port:
-        say(f"\nMails go nowhere; they are kept in {application.state / 'mail'}")
+    if catches_mail:
+        say(f"\nMails go nowhere; they are kept in {application.mail}")
     say(f"Logs: {application.logs}\nStop with Ctrl-C.")

@@ -100,12 +100,18 @@ class Supervisor:
             raise StackError(f"{name} ended with exit code {code}; the rest cannot run without it.{child.last_words()}")
         lived = time.monotonic() - child.started
         place.quick_failures = place.quick_failures + 1 if lived < QUICK_SECONDS else 1
-        if place.quick_failures >= QUICK_FAILURES and place.program.is_extra:
-            self.say(f"{name} failed {QUICK_FAILURES} times in a row; going on without it.{child.last_words()}")
-            self.places = [other for other in self.places if other is not place]
-            return
         if place.quick_failures >= QUICK_FAILURES:
-            raise StackError(f"{name} failed {QUICK_FAILURES} times in a row; giving up.{child.last_words()}")
+            self._give_up(place, child)
+            return
         pause = min(2.0 ** (place.quick_failures - 1), LONGEST_PAUSE)
         self.say(f"{name} ended with exit code {code}; starting it again in {pause:.0f} s.")
         place.child, place.due = None, time.monotonic() + pause
+
+    def _give_up(self, place: Place, child: Child) -> None:
+        failed = f"{place.program.name} failed {QUICK_FAILURES} times in a row"
+        if not place.program.is_extra:
+            raise StackError(f"{failed}; giving up.{child.last_words()}")
+        self.say(f"{failed}; going on without it.{child.last_words()}")
+        self.places.remove(place)
+        if place.program.listens:
+            place.program.listens.close()  # so that callers are refused at once instead of waiting for an answer

@@ -1,4 +1,4 @@
-"""The command that makes the first administrator."""
+"""The commands that make the first administrator, and tell whether there is one yet."""
 
 import pytest
 from django.core.management import CommandError, call_command
@@ -38,3 +38,10 @@ def test_a_login_name_that_is_taken_is_refused(monkeypatch: pytest.MonkeyPatch) 
     call_command("add_person", "ada", "--password-from", "FIRST_PASSWORD")
     with pytest.raises(CommandError, match="already exists"):
         call_command("add_person", "ada", "--password-from", "FIRST_PASSWORD")
+
+
+def test_who_may_not_log_in_is_not_counted(capsys: pytest.CaptureFixture[str]) -> None:
+    Person.objects.create(username="ada")
+    Person.objects.create(username="bo", is_active=False)
+    call_command("count_people")
+    assert capsys.readouterr().out == "1\n"

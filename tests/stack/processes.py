@@ -21,6 +21,10 @@ def descendants(root: int) -> set[int]:
     return found
 
 
+def command_line(pid: int) -> str:
+    return subprocess.run(["ps", "-o", "args=", "-p", str(pid)], capture_output=True, text=True, check=False).stdout
+
+
 def wait_for(predicate: Callable[[], object], timeout: float = 20.0, what: str = "it") -> None:
     deadline = time.monotonic() + timeout
     while not predicate():

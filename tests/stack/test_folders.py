@@ -1,6 +1,5 @@
 """Folders and addresses: private, short enough, and free."""
 
-import os
 import socket
 import stat
 import subprocess
@@ -13,6 +12,12 @@ import pytest
 from config.stack import addresses, folders
 from config.stack.errors import StackError
 from config.stack.folders import CHECKOUT, Lock
+
+
+def free_port() -> int:
+    with socket.create_server(("127.0.0.1", 0)) as probe:
+        port: int = probe.getsockname()[1]
+        return port
 
 
 def test_the_secret_key_is_made_once_and_only_its_owner_reads_it(tmp_path: Path) -> None:
@@ -51,10 +56,15 @@ def test_a_lock_ends_with_its_holder(tmp_path: Path) -> None:
     assert not Lock.held(tmp_path)
 
 
-def test_a_taken_port_gives_the_next_free_one() -> None:
-    with socket.create_server(("127.0.0.1", 0)) as taken:
-        port = taken.getsockname()[1]
-        assert addresses.free_port(port, "127.0.0.1") > port
+def test_two_who_want_one_port_get_two_before_either_serves() -> None:
+    first_port = free_port()
+    with addresses.listen(first_port, "127.0.0.1") as one, addresses.listen(first_port, "127.0.0.1") as other:
+        assert first_port <= one.getsockname()[1] < other.getsockname()[1]
+
+
+def test_an_address_of_another_machine_is_named() -> None:
+    with pytest.raises(StackError, match=r"192\.0\.2\.1"):  # RFC 5737, TEST-NET-1
+        addresses.listen(8000, "192.0.2.1")
 
 
 @pytest.mark.parametrize("text", ["eighty", "0", "70000", "-1"])
@@ -65,4 +75,4 @@ def test_a_port_that_is_none_is_named(monkeypatch: pytest.MonkeyPatch, text: str
 
 
 def test_nothing_answers_where_nobody_listens() -> None:
-    assert addresses.health(addresses.free_port(20_000 + os.getpid() % 10_000, "127.0.0.1")) == 0
+    assert addresses.health(free_port()) == 0

@@ -5,6 +5,7 @@ import json
 import os
 import shutil
 import signal
+import smtplib
 import socket
 import subprocess
 import sys
@@ -17,7 +18,7 @@ import pytest
 from config.stack import database
 from config.stack.addresses import health
 from config.stack.folders import CHECKOUT, digest
-from tests.stack.processes import descendants, processes, wait_for, wait_until_gone
+from tests.stack.processes import command_line, descendants, processes, wait_for, wait_until_gone
 
 STACK = (sys.executable, "-m", "config.stack")
 OURS = ("DATABASE_URL", "REDIS_URL", "SILTWATCH_SMTP_HOST", "SILTWATCH_STATIC_ROOT", "SILTWATCH_SECRET_KEY")
@@ -88,6 +89,26 @@ def test_it_serves_on_the_next_free_port_and_a_kill_leaves_nothing(running: Runn
     running.process.kill()
     wait_until_gone(everyone)
     assert "Siltwatch is not running" in manage(running, "check").stderr
+
+
+def test_an_empty_plant_says_how_the_first_person_is_added_until_there_is_one(running: Running) -> None:
+    line = ".venv/bin/python -m config.stack manage add_person NAME --role administrator"
+    assert line in running.said()
+    os.environ["FIRST_PASSWORD"] = "a long enough word"
+    assert manage(running, "count_people").stdout == "0\n"
+    added = manage(running, "add_person", "ada", "--role", "administrator", "--password-from", "FIRST_PASSWORD")
+    assert added.returncode == 0, added.stderr
+    assert manage(running, "count_people").stdout == "1\n"
+
+
+def test_mails_become_files_also_after_the_catcher_was_killed(running: Running) -> None:
+    facts = running.facts()
+    catcher = next(pid for pid in descendants(running.process.pid) if "mailbox" in command_line(pid))
+    os.kill(catcher, signal.SIGKILL)
+    with smtplib.SMTP("127.0.0.1", int(facts["SILTWATCH_SMTP_PORT"]), timeout=30) as client:
+        client.sendmail("mill@example.com", ["ada@example.com"], "Subject: Debarker 2\r\n\r\nPast its limit.\r\n")
+    assert "Subject: Debarker 2" in next((running.state / "mail").glob("*.eml")).read_text()
+    assert "the mail catcher ended with exit code -9; starting it again" in running.said()
 
 
 def test_a_wanted_stop_is_clean_and_a_second_start_is_refused_meanwhile(running: Running) -> None:

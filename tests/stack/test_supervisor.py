@@ -2,6 +2,7 @@
 
 import os
 import signal
+import socket
 import subprocess
 import sys
 import textwrap
@@ -144,9 +145,12 @@ def test_nor_where_the_kernel_gives_no_help() -> None:
 def test_what_is_only_an_extra_is_done_without(python: Builder) -> None:
     said: list[str] = []
     with Supervisor(said.append) as supervisor:
-        supervisor.start(python("the mail catcher", "raise SystemExit(3)", restarts=True, is_extra=True))
+        listens = socket.create_server(("127.0.0.1", 0))
+        failing = python("the mail catcher", "raise SystemExit(3)", restarts=True, is_extra=True, listens=listens)
+        supervisor.start(failing)
         stays = supervisor.start(python("the database", "import time; time.sleep(600)"))
         look = supervisor_module.Supervisor._look_at
         wait_for(lambda: look(supervisor, supervisor.places[0]) or len(supervisor.places) == 1)
         assert stays.ended() is None
     assert "going on without it" in said[-1]
+    assert listens.fileno() == -1, "callers would wait for an answer"
