@@ -41,9 +41,9 @@ def first(path: str = "pk") -> Kwargs:
 PAGES: dict[str, tuple[Kwargs, int]] = {
     "account": (nothing, 7),
     "board": (nothing, 8),
-    "reservoir": (tag, 30),
-    "samples": (nothing, 10),
-    "alerts": (nothing, 10),
+    "reservoir": (tag, 15),
+    "samples": (nothing, 9),
+    "alerts": (nothing, 8),
     "register": (nothing, 17),
     "register-sites": (nothing, 5),
     "register-areas": (nothing, 5),
