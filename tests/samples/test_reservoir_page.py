@@ -8,7 +8,7 @@ import pytest
 from django.test import Client
 from django.utils import timezone
 
-from fleet.models import Event, Reservoir, Role
+from fleet.models import Event, OilCharge, Reservoir, Role
 from samples.outlooks import refresh_outlook
 from tests import builders
 
@@ -120,3 +120,13 @@ def test_a_long_history_costs_no_more_queries(reader: Client, django_assert_num_
     refresh_outlook(made.pk, timezone.now())
     with django_assert_num_queries(15):
         reader.get("/reservoirs/HP-4/")
+
+
+def test_a_code_of_drained_oil_says_so(reader: Client) -> None:
+    made = press()
+    at = builders.days_ago(1, timezone.now())
+    made.charges.update(ended_at=at)
+    OilCharge.objects.create(reservoir=made, fluid=builders.fluid(), started_at=at)
+    text = page(reader, made)
+    assert "has not been sampled since" in text
+    assert "Of the oil that was in it before" in text
