@@ -7,7 +7,7 @@ BIN := $(VENV)/bin
 UV := uv==0.13.9
 SYNC = $(BIN)/uv pip sync --quiet --require-hashes --python $(BIN)/python requirements.lock
 # Long enough for Django's own check of it; it signs nothing that is kept.
-CHECK_ENV := SILTWATCH_SECRET_KEY=only-for-checks-0123456789-abcdefghijklmnopqrstuvwxyz-ABCDEFGHIJKLM
+CHECK_ENV := SILTWATCH_DEBUG= SILTWATCH_PLAIN_HTTP= SILTWATCH_SECRET_KEY=only-for-checks-0123456789-abcdefghijklmnopqrstuvwxyz-ABCDEFGHIJKLM
 
 .PHONY: run test check bench lock install clean
 
